@@ -1,0 +1,94 @@
+"""The C core for Python: contiguous arrays in, arrays of its structures out."""
+
+import numpy as np
+
+from ._core import ffi, lib
+from .status import EXCEPTION_OF, Flag, flag_text, flags_in, status_text
+
+__all__ = ["Flag", "Model", "field_many", "flag_text", "flags_in", "heading_log", "sincos_deg", "atan2_deg",
+           "status_text", "EXCEPTION_OF"]
+
+_NUMPY_OF = {"double": np.float64, "int32_t": np.int32, "uint32_t": np.uint32}
+
+
+def _dtype_of(ctype):
+    """numpy's view of a C type: scalars, arrays of them, and structures with the compiler's own offsets."""
+    if ctype.kind == "struct":
+        names, fields = zip(*ctype.fields, strict=True)
+        return np.dtype({"names": list(names), "formats": [_dtype_of(f.type) for f in fields],
+                         "offsets": [f.offset for f in fields], "itemsize": ffi.sizeof(ctype)})
+    if ctype.kind == "array":
+        return np.dtype((_dtype_of(ctype.item), (ctype.length,)))
+    return np.dtype(_NUMPY_OF[ctype.cname])
+
+
+FIELD_DTYPE = _dtype_of(ffi.typeof("magnav_field_values"))
+HEADING_DTYPE = _dtype_of(ffi.typeof("magnav_heading"))
+GRID_VARIATION_LATITUDE_DEG = lib.MAGNAV_GRID_VARIATION_LATITUDE_DEG
+
+
+def _pointer(array, ctype):
+    return ffi.from_buffer(ctype, array, require_writable=False)
+
+
+def _output(array, ctype):
+    return ffi.from_buffer(ctype, array, require_writable=True)
+
+
+class Model:
+    """A model handed to the core: keeps the arrays that the C structure points to alive."""
+
+    def __init__(self, breaks_yr, polynomials, valid_from_yr, valid_until_yr, degree):
+        self._breaks = np.ascontiguousarray(breaks_yr, dtype=np.float64)
+        self._polynomials = np.ascontiguousarray(polynomials, dtype=np.float64)
+        pieces, order, _ = self._polynomials.shape
+        self._keep = (_pointer(self._breaks, "double[]"), _pointer(self._polynomials, "double[]"))
+        self.c = ffi.new("magnav_model *", {
+            "breaks_yr": self._keep[0], "polynomials": self._keep[1], "valid_from_yr": valid_from_yr,
+            "valid_until_yr": valid_until_yr, "degree": degree, "order": order, "pieces": pieces})
+        self.snapshot_reals = lib.MAGNAV_SNAPSHOT_REALS(degree)
+
+
+def _raise_for(status):
+    if status:
+        raise EXCEPTION_OF[status](f"C core: {status_text(status)}")
+
+
+def field_many(model, extrapolate, lat_deg, lon_deg, height_m, year):
+    """Fields at (n,) points, float64 each: an array of FIELD_DTYPE and an int32 array of statuses."""
+    count = len(lat_deg)
+    out = np.zeros(count, FIELD_DTYPE)
+    status = np.zeros(count, np.int32)
+    memory = np.empty(model.snapshot_reals)
+    _raise_for(lib.magnav_field_many(
+        model.c, int(extrapolate), _output(memory, "double[]"), memory.size, count, _pointer(lat_deg, "double[]"),
+        _pointer(lon_deg, "double[]"), _pointer(height_m, "double[]"), _pointer(year, "double[]"),
+        _output(out, "magnav_field_values[]"), _output(status, "int32_t[]")))
+    return out, status
+
+
+def heading_log(setup, t_s, mag_uT, acc_mps2=None, gyr_radps=None):
+    """Headings of a log: `setup` is a dict with the names of magnav_heading_setup, arrays are (n,) and (n, 3) float64.
+
+    Returns an array of HEADING_DTYPE and an int32 array of statuses.
+    """
+    count = len(t_s)
+    out = np.zeros(count, HEADING_DTYPE)
+    status = np.zeros(count, np.int32)
+    optional = [ffi.NULL if a is None else _pointer(a, "double[]") for a in (acc_mps2, gyr_radps)]
+    _raise_for(lib.magnav_heading_log(
+        ffi.new("magnav_heading_setup *", setup), count, _pointer(t_s, "double[]"), _pointer(mag_uT, "double[]"),
+        *optional, _output(out, "magnav_heading[]"), _output(status, "int32_t[]")))
+    return out, status
+
+
+def sincos_deg(x_deg):
+    """The core's own sine and cosine of one angle in degrees."""
+    both = ffi.new("double[2]")
+    lib.magnav_sincos_deg(x_deg, both, both + 1)
+    return both[0], both[1]
+
+
+def atan2_deg(y, x):
+    """The core's own arctangent, in degrees."""
+    return lib.magnav_atan2_deg(y, x)

@@ -1,0 +1,1 @@
+"""Error models of the field, and the budget that combines them with the rest."""
