@@ -24,6 +24,7 @@ def _dtype_of(ctype):
 
 FIELD_DTYPE = _dtype_of(ffi.typeof("magnav_field_values"))
 HEADING_DTYPE = _dtype_of(ffi.typeof("magnav_heading"))
+PARAMETER_STATUS = lib.MAGNAV_E_PARAMETER
 GRID_VARIATION_LATITUDE_DEG = lib.MAGNAV_GRID_VARIATION_LATITUDE_DEG
 
 
