@@ -1,4 +1,4 @@
-"""The only place where a frame is changed. Inside magnav: body FRD (forward, right, down), local NED (north, east, down)."""
+"""The only place where a frame is changed. Inside: body FRD (forward, right, down), local NED (north, east, down)."""
 
 import numpy as np
 
@@ -20,12 +20,12 @@ def _known(name, accepted, what):
 
 
 def body_to_frd(vector, body):
-    """Vectors (..., 3) of the body frame named, FRD or FLU (forward, left, up), in FRD; the same call turns them back."""
+    """Vectors (..., 3) of the body frame named, FRD or FLU (forward, left, up), in FRD; the same call turns back."""
     return np.asarray(vector, dtype=np.float64) * _TO_FRD[_known(body, BODY_FRAMES, "body frame")]
 
 
 def local_to_ned(vector, local):
-    """Vectors (..., 3) of the local frame named, NED or ENU (east, north, up), in NED; the same call turns them back."""
+    """Vectors (..., 3) of the local frame named, NED or ENU (east, north, up), in NED; the same call turns back."""
     vector = np.asarray(vector, dtype=np.float64)
     if _known(local, LOCAL_FRAMES, "local frame") == "NED":
         return vector.copy()
@@ -33,7 +33,7 @@ def local_to_ned(vector, local):
 
 
 def to_specific_force(acc_mps2, sense):
-    """Accelerometer readings as specific force (at rest they point up); `sense` "gravity" is a device that shows down."""
+    """Accelerometer readings as specific force (at rest it points up); `sense` "gravity": a device that shows down."""
     acc_mps2 = np.asarray(acc_mps2, dtype=np.float64)
     return -acc_mps2 if _known(sense, ACCELERATION_SENSES, "acceleration sense") == "gravity" else acc_mps2.copy()
 

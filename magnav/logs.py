@@ -81,8 +81,9 @@ def _rename(table, names):
                                f"{', '.join(table.names)}")
         quantity, _, unit = ours.partition("_")
         if quantity not in UNITS or unit.rpartition("_")[2] not in UNITS[quantity]:
+            units = "; ".join(f"{q} in {', '.join(u)}" for q, u in UNITS.items())
             raise LogFileError(f"column name {ours!r} is not known; accepted are mag, acc, gyr with _x, _y, _z and a "
-                               "unit, or t with a unit: " + "; ".join(f"{q} in {', '.join(u)}" for q, u in UNITS.items()))
+                               f"unit, or t with a unit: {units}")
         table.names[table.names.index(theirs)] = ours
 
 

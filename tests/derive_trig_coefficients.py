@@ -1,4 +1,4 @@
-"""Derives the polynomial coefficients in c_core/src/trig.c. Run: python tests/derive_trig_coefficients.py (needs mpmath).
+"""Derives the polynomial coefficients in c_core/src/trig.c. Run: python tests/derive_trig_coefficients.py
 
 Remez exchange on the reduced ranges, in the square of the argument:
     sin y = y + y^3 p(y^2),  cos y = 1 - y^2/2 + y^4 q(y^2)   for |y| <= pi/4
@@ -25,8 +25,8 @@ def remez(f, weight, low, high, degree, rounds=12):
         solution = mp.lu_solve(matrix, right)
         coefficients = [solution[j] for j in range(degree + 1)]
 
-        def error(x):
-            return weight(x) * (f(x) - mp.polyval(coefficients[::-1], x))
+        def error(x, c=tuple(coefficients[::-1])):
+            return weight(x) * (f(x) - mp.polyval(c, x))
 
         grid = [low + (high - low) * k / 600 for k in range(601)]
         values = [error(x) for x in grid]

@@ -34,13 +34,14 @@ class Bearing:
     grid: object
 
 
-def convert_bearing(bearing_deg, from_north, to_north, *, field, crs=None, sigma_deg=0.0):
+def convert_bearing(bearing_deg, from_north, to_north, *, field, crs=None, sigma_deg=0.0, bad="raise"):
     """Turn bearings between norths; all arguments broadcast.
 
     bearing_deg: clockwise, -360 to 360. from_north, to_north: "magnetic", "true" or "grid". field: a `Field` at the
     place and date. crs: a projected coordinate system, see `magnav.grid_north.grid_convergence`; needed for grid.
     sigma_deg: standard uncertainty of the bearing itself; that of the declination is added where one of the two norths
     is magnetic and the other is not.
+    bad: "raise" stops at a bearing out of range or a point outside the projection; "nan" gives NaN there.
     Raises InputError.
     """
     for name in (from_north, to_north):
@@ -49,12 +50,15 @@ def convert_bearing(bearing_deg, from_north, to_north, *, field, crs=None, sigma
     if "grid" in (from_north, to_north) and crs is None:
         raise InputError("grid north needs a projected coordinate system: give crs")
     bearing, own_sigma = (np.asarray(v, dtype=np.float64) for v in (bearing_deg, sigma_deg))
-    if not np.all(np.abs(bearing) <= 360):
-        raise InputError("bearing_deg must be finite and between -360 and 360")
+    out_of_range = ~(np.abs(bearing) <= 360)
+    if np.any(out_of_range):
+        if bad == "raise":
+            raise InputError("bearing_deg must be finite and between -360 and 360")
+        bearing = np.where(out_of_range, np.nan, bearing)
     if not np.all(own_sigma >= 0):
         raise InputError("sigma_deg must be 0 or more")
     convergence, grid = ((np.nan, None) if crs is None
-                         else grid_convergence(crs, field.lat_deg, field.lon_deg))
+                         else grid_convergence(crs, field.lat_deg, field.lon_deg, bad=bad))
     # angle of each north from true north
     azimuth = {"magnetic": field.declination_deg, "true": 0.0, "grid": convergence}
     true = bearing + azimuth[from_north]

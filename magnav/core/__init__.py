@@ -5,8 +5,18 @@ import numpy as np
 from ._core import ffi, lib
 from .status import EXCEPTION_OF, Flag, flag_text, flags_in, status_text
 
-__all__ = ["Flag", "Model", "field_many", "flag_text", "flags_in", "heading_log", "sincos_deg", "atan2_deg",
-           "status_text", "EXCEPTION_OF"]
+__all__ = [
+    "EXCEPTION_OF",
+    "Flag",
+    "Model",
+    "atan2_deg",
+    "field_many",
+    "flag_text",
+    "flags_in",
+    "heading_log",
+    "sincos_deg",
+    "status_text",
+]
 
 _NUMPY_OF = {"double": np.float64, "int32_t": np.int32, "uint32_t": np.uint32}
 

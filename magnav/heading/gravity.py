@@ -4,7 +4,7 @@ import math
 
 
 def normal_gravity_mps2(lat_deg, height_m):
-    """Somigliana's closed formula on WGS84 with the second-order height term (NGA.STND.0036, WGS 84, 2014, eq. 4-1, 4-3)."""
+    """Somigliana's closed formula on WGS84, to second order in height (NGA.STND.0036, WGS 84, 2014, eq. 4-1, 4-3)."""
     s2 = math.sin(math.radians(lat_deg)) ** 2
     a, b, flattening = 6378137.0, 6356752.314245179, 1 / 298.257223563
     m = 7.292115e-5**2 * a**2 * b / 3.986004418e14

@@ -1,0 +1,59 @@
+"""Entry of the command `magnav`: finds the subcommand, turns exceptions into messages and exit codes."""
+
+import argparse
+import os
+import sys
+
+from ..caution import CAUTION
+from ..errors import CalibrationRefused, CoefficientFileError, LogFileError, MagnavError
+
+EXIT_DONE, EXIT_ARGUMENTS, EXIT_FILE, EXIT_REFUSED, EXIT_BAD_ROWS = 0, 2, 3, 4, 5
+
+EXIT_CODES = """exit codes:
+  0  done
+  2  an argument or a value is wrong
+  3  a file cannot be read or trusted
+  4  the calibration is refused
+  5  done, but some rows were bad: good rows went through, bad ones are listed in the side file
+"""
+
+
+def build_parser():
+    """The whole parser; each subcommand's module adds its own."""
+    from . import bearing, calibrate, field, heading
+
+    parser = argparse.ArgumentParser(
+        prog="magnav", formatter_class=argparse.RawDescriptionHelpFormatter,
+        description="Directions from true and grid north, with an honest uncertainty, from a magnetic sensor or a "
+                    "compass bearing.", epilog=f"{EXIT_CODES}\n{CAUTION}")
+    parser.add_argument("--version", action="version", version=_version())
+    commands = parser.add_subparsers(dest="command", metavar="COMMAND", required=True)
+    for module in (field, calibrate, heading, bearing):
+        module.add_parser(commands)
+    return parser
+
+
+def _version():
+    from importlib.metadata import version
+
+    return f"magnav {version('magnav')}"
+
+
+def main(arguments=None):
+    """Run the command; returns the exit code."""
+    parser = build_parser()
+    options = parser.parse_args(arguments)
+    try:
+        return options.run(options)
+    except BrokenPipeError:
+        # whoever read our output has gone; leave quietly, and keep Python from complaining at its own end
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+        return EXIT_DONE
+    except MagnavError as error:
+        print(f"magnav {options.command}: {error}", file=sys.stderr)
+        if isinstance(error, CalibrationRefused):
+            return EXIT_REFUSED
+        return EXIT_FILE if isinstance(error, (LogFileError, CoefficientFileError)) else EXIT_ARGUMENTS
+    except OSError as error:
+        print(f"magnav {options.command}: {error.filename or 'file'}: {error.strerror}", file=sys.stderr)
+        return EXIT_FILE
