@@ -36,7 +36,7 @@ extern "C" {
 typedef enum magnav_status {
     MAGNAV_OK = 0,
     MAGNAV_E_NULL = -1,       /* a required pointer is NULL */
-    MAGNAV_E_NOT_FINITE = -2, /* an input is NaN or infinite */
+    MAGNAV_E_NOT_FINITE = -2, /* an input is NaN, infinite or so large that a result overflows */
     MAGNAV_E_LATITUDE = -3,   /* latitude outside -90..90 */
     MAGNAV_E_LONGITUDE = -4,  /* longitude outside -360..360 */
     MAGNAV_E_HEIGHT = -5,     /* height outside MAGNAV_LOWEST_M..MAGNAV_HIGHEST_M */
@@ -46,7 +46,7 @@ typedef enum magnav_status {
     MAGNAV_E_TIME = -9,       /* sample times do not increase */
     MAGNAV_E_ACCELERATION = -10, /* the acceleration vector is zero: no vertical */
     MAGNAV_E_MAGNETIC = -11,  /* the magnetic vector is zero or vertical: no direction */
-    MAGNAV_E_PARAMETER = -12, /* a setting is out of its range (negative sigma, ...) */
+    MAGNAV_E_PARAMETER = -12, /* a setting is out of its range (negative sigma, NaN, ...) */
     MAGNAV_E_END = -13        /* one past the last; no function returns it */
 } magnav_status;
 
@@ -96,7 +96,8 @@ int32_t magnav_max_degree(void);
 
 /* Sine and cosine of an angle in degrees, |x| <= 1e6; exact at multiples of 90. Within 2 units in the last place. */
 void magnav_sincos_deg(magnav_real x_deg, magnav_real *sine, magnav_real *cosine);
-/* Angle of the point (x, y) from the x axis towards y, in (-180, 180]; 0 for (0, 0). Within 2 units in the last place. */
+/* Angle of the point (x, y) from the x axis towards y, in (-180, 180]; 0 for (0, 0). Within 2 units in the last place
+ * for coordinates below half the largest magnav_real. */
 magnav_real magnav_atan2_deg(magnav_real y, magnav_real x);
 /* The same angle in [0, 360) for one in [-720, 720]. */
 magnav_real magnav_full_circle_deg(magnav_real x_deg);

@@ -3,7 +3,7 @@
 
 #define PER_RADIAN MAGNAV_C(57.295779513082320877)
 
-/* The same angle in (-180, 180], for one in [-540, 540]. */
+/* The same angle in (-180, 180], for one in [-360, 360]; exact. */
 static magnav_real half_circle_deg(magnav_real x_deg)
 {
     magnav_real angle = x_deg;
@@ -30,6 +30,12 @@ magnav_status magnav_elements(const magnav_real ned_nT[3], const magnav_real ned
         !isfinite(lon_deg)) {
         return MAGNAV_E_NOT_FINITE;
     }
+    if (real_abs(lat_deg) > MAGNAV_C(90.0)) {
+        return MAGNAV_E_LATITUDE;
+    }
+    if (real_abs(lon_deg) > MAGNAV_C(360.0)) {
+        return MAGNAV_E_LONGITUDE;
+    }
     v.north_nT = ned_nT[0];
     v.east_nT = ned_nT[1];
     v.down_nT = ned_nT[2];
@@ -37,7 +43,9 @@ magnav_status magnav_elements(const magnav_real ned_nT[3], const magnav_real ned
     f2 = h2 + v.down_nT * v.down_nT;
     v.horizontal_nT = real_sqrt(h2);
     v.total_nT = real_sqrt(f2);
-    v.declination_deg = magnav_atan2_deg(v.east_nT, v.north_nT);
+    if (h2 > zero) {
+        v.declination_deg = magnav_atan2_deg(v.east_nT, v.north_nT);
+    }
     v.inclination_deg = magnav_atan2_deg(v.down_nT, v.horizontal_nT);
     if (ned_nT_per_yr != NULL) {
         v.north_nT_per_yr = ned_nT_per_yr[0];
@@ -56,10 +64,14 @@ magnav_status magnav_elements(const magnav_real ned_nT[3], const magnav_real ned
                 (v.horizontal_nT * v.down_nT_per_yr - v.down_nT * v.horizontal_nT_per_yr) / f2 * PER_RADIAN;
         }
     }
+    if (!isfinite(f2) || !isfinite(v.horizontal_nT_per_yr) || !isfinite(v.total_nT_per_yr) ||
+        !isfinite(v.declination_deg_per_yr) || !isfinite(v.inclination_deg_per_yr)) {
+        return MAGNAV_E_NOT_FINITE; /* the values overflow */
+    }
     if (real_abs(lat_deg) >= MAGNAV_GRID_VARIATION_LATITUDE_DEG) {
         /* the polar grid's convergence is the longitude, with its sign changed in the south */
-        v.grid_variation_deg = half_circle_deg((lat_deg > zero) ? v.declination_deg - lon_deg
-                                                                : v.declination_deg + lon_deg);
+        const magnav_real convergence = half_circle_deg((lat_deg > zero) ? lon_deg : zero - lon_deg);
+        v.grid_variation_deg = half_circle_deg(v.declination_deg - convergence);
     }
     if (v.horizontal_nT < MAGNAV_BLACKOUT_NT) {
         v.flags |= MAGNAV_FLAG_BLACKOUT_ZONE;

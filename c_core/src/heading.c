@@ -38,15 +38,21 @@ static magnav_real calibration_variance(const magnav_calibration *cal, const mag
         sum = sum + g[i] * g[i] * row[i];
         row += i + 1;
     }
-    return (sum > MAGNAV_C(0.0)) ? sum : MAGNAV_C(0.0);
+    return (sum < MAGNAV_C(0.0)) ? MAGNAV_C(0.0) : sum; /* written so that a NaN stays */
 }
 
-static int32_t sigmas_usable(const magnav_heading_setup *s, magnav_real tilt_sigma_deg)
+static int32_t setup_usable(const magnav_heading_setup *s)
 {
-    return s->mag_noise_uT >= MAGNAV_C(0.0) && s->declination_sigma_deg >= MAGNAV_C(0.0) &&
-           s->total_sigma_uT >= MAGNAV_C(0.0) && s->inclination_sigma_deg >= MAGNAV_C(0.0) &&
-           tilt_sigma_deg >= MAGNAV_C(0.0) && real_abs(s->declination_deg) <= MAGNAV_C(180.0) &&
-           real_abs(s->convergence_deg) <= MAGNAV_C(180.0);
+    const magnav_real from_zero[5] = {s->mag_noise_uT, s->declination_sigma_deg, s->total_uT, s->total_sigma_uT,
+                                      s->inclination_sigma_deg};
+    int32_t usable = all_finite(s->calibration.hard_iron_uT, 3) && all_finite(s->calibration.soft_iron, 9) &&
+                     all_finite(s->calibration.covariance, 45) && all_finite(from_zero, 5);
+
+    for (int32_t i = 0; i < 5; i++) {
+        usable = usable && from_zero[i] >= MAGNAV_C(0.0);
+    }
+    return usable && real_abs(s->declination_deg) <= MAGNAV_C(180.0) &&
+           real_abs(s->convergence_deg) <= MAGNAV_C(180.0) && real_abs(s->inclination_deg) <= MAGNAV_C(90.0);
 }
 
 magnav_status magnav_heading_of(const magnav_heading_setup *setup, const magnav_real mag_uT[3],
@@ -67,7 +73,7 @@ magnav_status magnav_heading_of(const magnav_heading_setup *setup, const magnav_
     magnav_real steep_forward;
     magnav_real steep_field;
     magnav_real tilt2;
-    magnav_real across2;
+    magnav_real across;
     magnav_real noise2;
     magnav_real along2;
     magnav_real within2;
@@ -76,13 +82,13 @@ magnav_status magnav_heading_of(const magnav_heading_setup *setup, const magnav_
     if (setup == NULL || mag_uT == NULL || down == NULL || heading == NULL) {
         return MAGNAV_E_NULL;
     }
-    if (!all_finite(mag_uT, 3) || !all_finite(down, 3) || !isfinite(tilt_sigma_deg)) {
-        return MAGNAV_E_NOT_FINITE;
-    }
-    if (!sigmas_usable(setup, tilt_sigma_deg)) {
+    if (!setup_usable(setup) || tilt_sigma_deg < zero) {
         return MAGNAV_E_PARAMETER;
     }
     size = real_sqrt(dot(down, down));
+    if (!all_finite(mag_uT, 3) || !isfinite(size) || !isfinite(tilt_sigma_deg)) {
+        return MAGNAV_E_NOT_FINITE;
+    }
     if (!(size > zero)) {
         return MAGNAV_E_ACCELERATION;
     }
@@ -92,6 +98,10 @@ magnav_status magnav_heading_of(const magnav_heading_setup *setup, const magnav_
     }
     for (int32_t i = 0; i < 3; i++) {
         field[i] = dot(&setup->calibration.soft_iron[3 * i], reading);
+    }
+    out.measured_total_uT = real_sqrt(dot(field, field));
+    if (!isfinite(out.measured_total_uT)) {
+        return MAGNAV_E_NOT_FINITE;
     }
     cross(d, field, east);
     horizontal = real_sqrt(dot(east, east));
@@ -110,7 +120,6 @@ magnav_status magnav_heading_of(const magnav_heading_setup *setup, const magnav_
     out.grid_deg = magnav_full_circle_deg(out.true_deg - setup->convergence_deg);
     out.pitch_deg = magnav_atan2_deg(zero - d[0], forward);
     out.roll_deg = magnav_atan2_deg(d[1], d[2]);
-    out.measured_total_uT = real_sqrt(dot(field, field));
     out.measured_inclination_deg = magnav_atan2_deg(vertical, horizontal);
     out.flags = setup->flags;
 
@@ -119,10 +128,10 @@ magnav_status magnav_heading_of(const magnav_heading_setup *setup, const magnav_
         seen[i] = dot(&setup->calibration.soft_iron[3 * i], east);
     }
     noise2 = setup->mag_noise_uT * setup->mag_noise_uT;
-    across2 = (PER_RADIAN / horizontal) * (PER_RADIAN / horizontal);
-    out.contribution_deg[MAGNAV_FROM_SENSOR] = real_sqrt(noise2 * dot(seen, seen) * across2);
+    across = PER_RADIAN / horizontal;
+    out.contribution_deg[MAGNAV_FROM_SENSOR] = real_sqrt(noise2 * dot(seen, seen)) * across;
     out.contribution_deg[MAGNAV_FROM_CALIBRATION] =
-        real_sqrt(calibration_variance(&setup->calibration, east, reading) * across2);
+        real_sqrt(calibration_variance(&setup->calibration, east, reading)) * across;
     steep_field = vertical / horizontal;
     if (forward > zero) {
         steep_forward = d[0] / forward;
@@ -146,6 +155,10 @@ magnav_status magnav_heading_of(const magnav_heading_setup *setup, const magnav_
         out.sigma_deg = out.sigma_deg + part * part;
     }
     out.sigma_deg = real_sqrt(out.sigma_deg);
+    /* a covariance or a ratio that overflows would otherwise end as a part of zero */
+    if (!isfinite(out.sigma_deg) || !isfinite(tilt2)) {
+        return MAGNAV_E_NOT_FINITE;
+    }
 
     /* plausibility against the model: along the field for the magnitude, in its vertical plane for the dip */
     for (int32_t i = 0; i < 3; i++) {
@@ -194,6 +207,9 @@ magnav_status magnav_heading_log(const magnav_heading_setup *setup, size_t count
         magnav_status row;
         if (acc_mps2 == NULL) {
             row = magnav_heading_of(setup, &mag_uT[3 * i], LEVEL, setup->level_sigma_deg, &headings[i]);
+            if (row == MAGNAV_OK) {
+                headings[i].flags = (headings[i].flags & ~MAGNAV_FLAG_ACCELERATED) | MAGNAV_FLAG_ASSUMED_LEVEL;
+            }
         } else if (!isfinite(t_s[i])) {
             row = MAGNAV_E_NOT_FINITE;
         } else {

@@ -6,7 +6,7 @@ const char *magnav_status_text(int32_t status)
     switch (status) {
     case MAGNAV_OK: return "computed";
     case MAGNAV_E_NULL: return "a required pointer is NULL";
-    case MAGNAV_E_NOT_FINITE: return "a value is NaN or infinite";
+    case MAGNAV_E_NOT_FINITE: return "a value is NaN, infinite or too large to compute with";
     case MAGNAV_E_LATITUDE: return "latitude outside -90 to 90 degrees";
     case MAGNAV_E_LONGITUDE: return "longitude outside -360 to 360 degrees";
     case MAGNAV_E_HEIGHT: return "height outside -10,000 m to 10,000,000 m";

@@ -180,16 +180,24 @@ magnav_status magnav_vector_at(const magnav_snapshot *snapshot, magnav_real lat_
                                magnav_real height_m, magnav_real ned_nT[3])
 {
     position at;
+    magnav_real ned[3];
     magnav_status status;
 
     if (snapshot == NULL || snapshot->terms == NULL || ned_nT == NULL) {
         return MAGNAV_E_NULL;
     }
     status = locate(lat_deg, lon_deg, height_m, &at);
-    if (status == MAGNAV_OK) {
-        synthesise(snapshot, &at, 0, ned_nT, NULL);
+    if (status != MAGNAV_OK) {
+        return status;
     }
-    return status;
+    synthesise(snapshot, &at, 0, ned, NULL);
+    if (!all_finite(ned, 3)) {
+        return MAGNAV_E_NOT_FINITE; /* a coefficient is */
+    }
+    for (int32_t i = 0; i < 3; i++) {
+        ned_nT[i] = ned[i];
+    }
+    return MAGNAV_OK;
 }
 
 magnav_status magnav_field_at(const magnav_snapshot *snapshot, magnav_real lat_deg, magnav_real lon_deg,
@@ -223,7 +231,8 @@ magnav_status magnav_field_many(const magnav_model *model, int32_t extrapolate, 
     magnav_snapshot snapshot = {NULL, MAGNAV_C(0.0), 0, 0U};
     magnav_status dated = MAGNAV_E_DATE;
 
-    if (lat_deg == NULL || lon_deg == NULL || height_m == NULL || year == NULL || fields == NULL || status == NULL) {
+    if (model == NULL || memory == NULL || lat_deg == NULL || lon_deg == NULL || height_m == NULL || year == NULL ||
+        fields == NULL || status == NULL) {
         return MAGNAV_E_NULL;
     }
     for (size_t i = 0; i < count; i++) {

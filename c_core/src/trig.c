@@ -76,7 +76,8 @@ magnav_real magnav_atan2_deg(magnav_real y, magnav_real x)
     if (x < zero) {
         angle = MAGNAV_C(180.0) - angle;
     }
-    return (y < zero) ? zero - angle : angle;
+    /* just below the negative x axis the angle rounds to 180: that is returned, as -180 is not in the range */
+    return (y < zero && angle < MAGNAV_C(180.0)) ? zero - angle : angle;
 }
 
 magnav_real magnav_full_circle_deg(magnav_real x_deg)

@@ -10,27 +10,35 @@
 #define UNREST_TIME_S MAGNAV_C(0.5)
 #define PER_RADIAN MAGNAV_C(57.295779513082320877)
 
+/* A turn in one step beyond which magnav_sincos_deg does not go, nor a gyroscope. */
+#define LARGEST_TURN_DEG MAGNAV_C(1.0e6)
+
 /* Turn `v` by the rotation that the body's turn about `rate` for `dt` causes in body axes: by -rate dt. */
-static void turn_back(magnav_real v[3], const magnav_real rate[3], magnav_real dt)
+static magnav_status turn_back(magnav_real v[3], const magnav_real rate[3], magnav_real dt)
 {
     const magnav_real speed = real_sqrt(dot(rate, rate));
+    const magnav_real turn_deg = speed * dt * PER_RADIAN;
     magnav_real axis[3];
     magnav_real across[3];
     magnav_real sine;
     magnav_real cosine;
     magnav_real along;
 
+    if (!(turn_deg <= LARGEST_TURN_DEG)) {
+        return MAGNAV_E_NOT_FINITE;
+    }
     if (speed > MAGNAV_C(0.0)) {
         for (int32_t i = 0; i < 3; i++) {
             axis[i] = rate[i] / speed;
         }
-        magnav_sincos_deg(speed * dt * PER_RADIAN, &sine, &cosine);
+        magnav_sincos_deg(turn_deg, &sine, &cosine);
         cross(v, axis, across);
         along = dot(v, axis) * (MAGNAV_C(1.0) - cosine);
         for (int32_t i = 0; i < 3; i++) {
             v[i] = v[i] * cosine + across[i] * sine + axis[i] * along;
         }
     }
+    return MAGNAV_OK;
 }
 
 magnav_status magnav_vertical_step(magnav_vertical *vertical, const magnav_heading_setup *setup,
@@ -46,15 +54,16 @@ magnav_status magnav_vertical_step(magnav_vertical *vertical, const magnav_headi
         return MAGNAV_E_NULL;
     }
     v = *vertical;
+    if (!isfinite(setup->gravity_mps2) || !isfinite(setup->acc_noise_mps2) || !isfinite(setup->gyr_drift_radps) ||
+        setup->gravity_mps2 <= MAGNAV_C(0.0) || setup->acc_noise_mps2 < MAGNAV_C(0.0) ||
+        setup->gyr_drift_radps < MAGNAV_C(0.0)) {
+        return MAGNAV_E_PARAMETER;
+    }
     if (!all_finite(acc_mps2, 3) || (gyr_radps != NULL && !all_finite(gyr_radps, 3))) {
         return MAGNAV_E_NOT_FINITE;
     }
     if (v.started != 0 && !(dt_s > MAGNAV_C(0.0) && isfinite(dt_s))) {
         return MAGNAV_E_TIME;
-    }
-    if (!(setup->gravity_mps2 > MAGNAV_C(0.0)) || !(setup->acc_noise_mps2 >= MAGNAV_C(0.0)) ||
-        !(setup->gyr_drift_radps >= MAGNAV_C(0.0))) {
-        return MAGNAV_E_PARAMETER;
     }
     size = real_sqrt(dot(acc_mps2, acc_mps2));
     if (!(size > MAGNAV_C(0.0))) {
@@ -68,6 +77,9 @@ magnav_status magnav_vertical_step(magnav_vertical *vertical, const magnav_headi
         v.unrest = fading * v.unrest + (MAGNAV_C(1.0) - fading) * stray * stray;
     }
     sample = (setup->acc_noise_mps2 * setup->acc_noise_mps2 + v.unrest) / (setup->gravity_mps2 * setup->gravity_mps2);
+    if (!isfinite(sample)) {
+        return MAGNAV_E_NOT_FINITE; /* kept, it would stay in the running mean for ever */
+    }
 
     if (v.started == 0 || gyr_radps == NULL || dt_s > UNREST_TIME_S) {
         /* nothing to carry from: the sample alone (after a gap, too) */
@@ -78,13 +90,21 @@ magnav_status magnav_vertical_step(magnav_vertical *vertical, const magnav_headi
     } else {
         const magnav_real drift = setup->gyr_drift_radps * dt_s;
         const magnav_real correlated = sample * (MAGNAV_C(1.0) + UNREST_TIME_S / dt_s);
+        magnav_real both;
         magnav_real gain;
         magnav_real length;
 
-        turn_back(v.down, gyr_radps, dt_s);
+        if (turn_back(v.down, gyr_radps, dt_s) != MAGNAV_OK) {
+            return MAGNAV_E_NOT_FINITE;
+        }
         /* a drift that keeps its sign over the filter's memory grows faster than a random one: hence the second term */
         v.variance = v.variance + drift * drift + MAGNAV_C(2.0) * drift * real_sqrt(v.variance);
-        gain = v.variance / (v.variance + correlated);
+        if (!isfinite(v.variance)) {
+            return MAGNAV_E_NOT_FINITE;
+        }
+        /* where both are said to be exact the sample is taken; a NaN, from a sample of no variance at once, too */
+        both = v.variance + correlated;
+        gain = (both > MAGNAV_C(0.0)) ? v.variance / both : MAGNAV_C(1.0);
         for (int32_t i = 0; i < 3; i++) {
             v.down[i] = v.down[i] - gain * (acc_mps2[i] / size + v.down[i]);
         }

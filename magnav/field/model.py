@@ -130,7 +130,8 @@ def _result(flat, out, status, sigma, names, models, shape):
         sigma = {name: np.where(failed, np.nan, v) for name, v in sigma.items()}
     for name in ("declination_deg", "declination_deg_per_yr"):
         values[name] = np.where(undefined, np.nan, values[name])
-    values["grid_variation_deg"] = np.where(undefined | (np.abs(flat[0]) < core.GRID_VARIATION_LATITUDE_DEG), np.nan, values["grid_variation_deg"])
+    no_grid = undefined | (np.abs(flat[0]) < core.GRID_VARIATION_LATITUDE_DEG)
+    values["grid_variation_deg"] = np.where(no_grid, np.nan, values["grid_variation_deg"])
 
     def shaped(array):
         return array.reshape(shape) if shape else array[0].item()
