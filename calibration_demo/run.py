@@ -21,7 +21,7 @@ def main():
     output = HERE / "output"
     output.mkdir(exist_ok=True)
     log = magnav.read_log(HERE / "log.csv")
-    truth = np.genfromtxt(HERE / "truth.csv", delimiter=",", names=True)
+    truth_deg = np.loadtxt(HERE / "truth.csv", delimiter=",", skiprows=2)[:, 1]
     field = magnav.load_model("auto").field(**PLACE, when=DATE)
     hand = log.t_s < HAND_S
     calibration = magnav.calibrate(log.mag_uT[hand], log.acc_mps2[hand], log.gyr_radps[hand], log.t_s[hand], field)
@@ -33,7 +33,7 @@ def main():
     for label, used in (("as read", None), ("calibrated", calibration)):
         headings = magnav.compute_heading(log.mag_uT, log.acc_mps2, log.gyr_radps, log.t_s, field=field,
                                           calibration=used, crs="utm")
-        error = np.mod(headings.true_deg - truth["true_deg"] + 180, 360) - 180
+        error = np.mod(headings.true_deg - truth_deg + 180, 360) - 180
         inside = np.mean(np.abs(error[flight]) <= 1.96 * headings.sigma_deg[flight])
         print(f"{label:10}: heading error in flight {np.sqrt(np.mean(error[flight] ** 2)):6.2f} deg RMS, "
               f"{100 * inside:.1f} % inside the stated 95 % interval")

@@ -25,6 +25,8 @@ def add_parser(commands):
                         help="a calibration file, none, or auto: from this log, where it can tell (auto)")
     parser.add_argument("--mag-noise-ut", type=float, metavar="UT",
                         help="noise of the magnetometer, one axis, one sample (the calibration's)")
+    parser.add_argument("--hard-iron-sigma-ut", type=float, metavar="UT",
+                        help="what to allow for an unknown iron where there is no calibration (20)")
     parser.add_argument("--json", action="store_true", help="everything, samples included, under documented keys")
     parser.add_argument("--output", metavar="CSV", help="where the headings of all samples go")
 
@@ -43,9 +45,10 @@ def run(options):
     refused = options.calibration == "auto" and found.verdict == "refused"
     # with the gyroscope alone and no times there is nothing to integrate over
     gyr = log.gyr_radps if log.t_s is not None else None
+    unknown = {} if options.hard_iron_sigma_ut is None else {"hard_iron_sigma_uT": options.hard_iron_sigma_ut}
     headings = compute_heading(
         log.mag_uT, log.acc_mps2, gyr, log.t_s, field=field, calibration=None if refused else found, body=options.body,
-        acceleration=options.acceleration, crs=options.crs, mag_noise_uT=options.mag_noise_ut)
+        acceleration=options.acceleration, crs=options.crs, mag_noise_uT=options.mag_noise_ut, **unknown)
     bad = _bad_samples(headings, log)
     bad = sorted(log.bad + bad)
     write_bad_rows(bad, side_file_of(options.output or options.log))

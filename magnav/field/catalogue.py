@@ -1,5 +1,6 @@
 """The models by name: what is shipped, what a name means, which model is made for which date."""
 
+import dataclasses
 import functools
 import importlib.resources
 import pathlib
@@ -39,7 +40,7 @@ def _entry(name):
 def _shipped(name):
     entry = _entry(name)
     with importlib.resources.as_file(FOLDER / entry["file"]) as path:
-        coefficients = read_coefficients(path)
+        coefficients = dataclasses.replace(read_coefficients(path), name=entry["name"], source=entry["source"])
     return Model(coefficients, entry["error_model"], entry["title"])
 
 

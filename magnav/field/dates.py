@@ -10,31 +10,42 @@ ACCEPTED = ("a datetime or date, a numpy datetime64, a decimal year (2025.5) or 
             "2025-07-02T12:00Z), or an array or list of these")
 
 
-def decimal_year(when):
+def decimal_year(when, missing="raise"):
     """`when` as float decimal years: a float for one date, an array of the same shape for an array.
 
     Accepts datetime (a time zone is converted to UTC; none means UTC), date (its midnight), numpy datetime64, a real
     number, text in ISO 8601 or as a decimal number, and arrays or nested lists of these.
+    missing: "nan" makes NaN of a NaN, a NaT or a masked element, which are errors otherwise.
     Raises InputError naming the first date that cannot be read (its index, for an array).
     """
+    when, keep = unmasked(when), missing == "nan"
     if isinstance(when, np.ndarray) and when.ndim and when.dtype.kind in "Mfiu":
-        return _datetime64(when) if when.dtype.kind == "M" else _numbers(when)
+        return _datetime64(when, keep) if when.dtype.kind == "M" else _numbers(when, keep)
     if isinstance(when, (list, tuple, np.ndarray)) and np.ndim(when):
         array = np.asarray(when, dtype=object)
         years = np.empty(array.shape)
         for index in np.ndindex(array.shape):
             try:
-                years[index] = _one(array[index])
+                years[index] = _one(array[index], keep)
             except InputError as error:
                 where = index[0] if len(index) == 1 else index
                 raise InputError(f"{error} (element {where})") from None
         return years
-    return _one(when.item() if isinstance(when, np.ndarray) and when.dtype.kind != "M" else when)
+    return _one(when.item() if isinstance(when, np.ndarray) and when.dtype.kind != "M" else when, keep)
 
 
-def _one(when):
+def unmasked(value):
+    """A masked array as a plain one that holds NaN or NaT where it is masked; anything else as it is."""
+    if not isinstance(value, np.ma.MaskedArray):
+        return value
+    if value.dtype.kind == "M":
+        return value.filled(np.datetime64("NaT"))
+    return value.astype(np.float64 if value.dtype.kind in "fiu" else object).filled(np.nan)
+
+
+def _one(when, keep):
     if isinstance(when, np.datetime64) or (isinstance(when, np.ndarray) and when.dtype.kind == "M"):
-        return float(_datetime64(np.asarray(when)))
+        return float(_datetime64(np.asarray(when), keep))
     if isinstance(when, dt.datetime):
         if when.tzinfo is not None:
             when = when.astimezone(dt.UTC).replace(tzinfo=None)
@@ -43,8 +54,9 @@ def _one(when):
         return _elapsed(dt.datetime(when.year, when.month, when.day))
     if isinstance(when, str):
         return _text(when)
-    if isinstance(when, (int, float, np.integer, np.floating)) and not isinstance(when, bool):
-        return float(_numbers(np.asarray(when)))
+    # numpy counts a duration among the integers
+    if isinstance(when, (int, float, np.integer, np.floating)) and not isinstance(when, (bool, np.timedelta64)):
+        return float(_numbers(np.asarray(when), keep))
     raise InputError(f"date {when!r} is of type {type(when).__name__}; accepted: {ACCEPTED}")
 
 
@@ -62,17 +74,17 @@ def _text(text):
     try:
         # a plain number is a decimal year; eight digits are the basic ISO form, which the date parser knows
         if stripped.replace(".", "", 1).isdigit() and len(stripped.split(".")[0]) <= 4:
-            return float(_numbers(np.asarray(float(stripped))))
-        return _one(dt.datetime.fromisoformat(stripped))
+            return float(_numbers(np.asarray(float(stripped)), False))
+        return _one(dt.datetime.fromisoformat(stripped), False)
     except (ValueError, OverflowError) as error:
         if isinstance(error, InputError):
             raise
         raise InputError(f"date {text!r} cannot be read; accepted: {ACCEPTED}") from None
 
 
-def _numbers(values):
+def _numbers(values, keep):
     years = np.asarray(values, dtype=np.float64)
-    bad = ~np.isfinite(years) | (np.abs(years) > 9999)
+    bad = (np.isnan(years) & (not keep)) | (np.abs(years) > 9999)
     if bad.any():
         index = np.argwhere(bad)[0]
         where = f" (element {index[0] if index.size == 1 else tuple(index.tolist())})" if index.size else ""
@@ -80,12 +92,15 @@ def _numbers(values):
     return years
 
 
-def _datetime64(moments):
-    if np.isnat(moments).any():
-        index = np.argwhere(np.isnat(moments))[0]
+def _datetime64(moments, keep):
+    missing = np.isnat(moments)
+    if missing.any() and not keep:
+        index = np.argwhere(missing)[0]
         where = f" (element {index[0] if index.size == 1 else tuple(index.tolist())})" if index.size else ""
         raise InputError(f"date NaT is not a date{where}; accepted: {ACCEPTED}")
     year = moments.astype("datetime64[Y]")
     start = year.astype("datetime64[us]")
     length = (year + 1).astype("datetime64[us]") - start
-    return year.astype(np.int64) + 1970 + (moments.astype("datetime64[us]") - start) / length
+    # NaT has no calendar year: its integer is replaced, its elapsed part is NaN
+    number = np.where(missing, 0, year.astype(np.int64)) + 1970
+    return number + (moments.astype("datetime64[us]") - start) / length

@@ -5,7 +5,7 @@ import numpy as np
 from .. import core
 from ..errors import InputError, OutOfValidityError
 from ..uncertainty.model_error import SIGMA_NAMES, Sigma, model_sigma
-from .dates import decimal_year
+from .dates import decimal_year, unmasked
 from .result import Field
 
 _VALUES = tuple(n for n in core.FIELD_DTYPE.names if n != "flags")
@@ -40,7 +40,8 @@ class Model:
         lat_deg -90 to 90, lon_deg -360 to 360, height_m above the ellipsoid -10,000 to 10,000,000.
         when: see `magnav.field.dates.decimal_year`; its shape broadcasts with the rest.
         extrapolate: compute outside the model's validity, with the flag OUTSIDE_VALIDITY and a growing sigma.
-        bad: "raise" stops at the first bad point; "nan" gives NaN there and says why in `status`.
+        bad: "raise" stops at the first bad point; "nan" gives NaN there and says why in `status`. A masked element
+        counts as NaN. A date that cannot be read at all is an error either way.
         Raises InputError (bad value, its index named) and OutOfValidityError (date outside the validity).
         """
         return _field(self, lat_deg, lon_deg, height_m, when, extrapolate, bad)
@@ -71,22 +72,27 @@ class AutoModel:
 
 def _real(name, value):
     try:
-        return np.asarray(value, dtype=np.float64)
+        array = np.asarray(unmasked(value))
+        # numpy would make numbers of text and of dates, and drop an imaginary part
+        if array.dtype.kind in "fiuO":
+            return array.astype(np.float64, copy=False)
     except (TypeError, ValueError):
-        raise InputError(f"{name} must be a real number or an array of them, not {value!r}") from None
+        pass
+    raise InputError(f"{name} must be a real number or an array of them, not {value!r}")
 
 
 def _field(chooser, lat_deg, lon_deg, height_m, when, extrapolate, bad):
     if bad not in ("raise", "nan"):
         raise InputError(f'bad={bad!r}: accepted are "raise" and "nan"')
     inputs = [_real("lat_deg", lat_deg), _real("lon_deg", lon_deg), _real("height_m", height_m),
-              np.asarray(decimal_year(when), dtype=np.float64)]
+              np.asarray(decimal_year(when, missing=bad), dtype=np.float64)]
     try:
         shape = np.broadcast_shapes(*(a.shape for a in inputs))
     except ValueError:
         raise InputError("lat_deg, lon_deg, height_m and when do not broadcast: shapes "
                          + ", ".join(str(a.shape) for a in inputs)) from None
-    lat, lon, height, year = flat = [np.ascontiguousarray(np.broadcast_to(a, shape)).ravel() for a in inputs]
+    # copies, so that the result does not change with the caller's arrays
+    lat, lon, height, year = flat = [np.broadcast_to(a, shape).flatten() for a in inputs]
 
     models, which = chooser.models_for(year)
     out = np.zeros(year.size, core.FIELD_DTYPE)

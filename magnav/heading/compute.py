@@ -18,8 +18,9 @@ MAG_NOISE_UT = 0.5
 ACC_NOISE_MPS2 = 0.1
 GYR_DRIFT_RADPS = 0.01
 LEVEL_SIGMA_DEG = 3.0
-UNCALIBRATED_HARD_IRON_UT = 5.0
-UNCALIBRATED_SOFT_IRON = 0.05
+# of a part whose iron nobody has measured: what a board with a battery and steel screws near the sensor may carry
+HARD_IRON_SIGMA_UT = 20.0
+SOFT_IRON_SIGMA = 0.05
 # Where no times are given each sample stands alone: a step longer than any filter's memory.
 LONE_STEP_S = 1e6
 
@@ -63,7 +64,8 @@ class Headings:
 
 def compute_heading(mag_uT, acc_mps2=None, gyr_radps=None, t_s=None, *, field, calibration=None, body="FRD",
                     acceleration="specific-force", crs=None, mag_noise_uT=None, acc_noise_mps2=ACC_NOISE_MPS2,
-                    gyr_drift_radps=GYR_DRIFT_RADPS, level_sigma_deg=LEVEL_SIGMA_DEG):
+                    gyr_drift_radps=GYR_DRIFT_RADPS, level_sigma_deg=LEVEL_SIGMA_DEG,
+                    hard_iron_sigma_uT=HARD_IRON_SIGMA_UT):
     """Heading of the forward axis for one sample (3,) or a log (n, 3).
 
     mag_uT, acc_mps2, gyr_radps: in the body frame named by `body`, FRD or FLU. Without acc_mps2 the sensor is taken to
@@ -72,6 +74,7 @@ def compute_heading(mag_uT, acc_mps2=None, gyr_radps=None, t_s=None, *, field, c
     field: a scalar `Field` at the place and date. calibration: a `Calibration` in the same body frame, not refused.
     crs: a projected coordinate system for grid headings, see `magnav.grid_north.grid_convergence`.
     mag_noise_uT: one axis, one sample; by default the calibration's, else 0.5. acc_noise_mps2: one axis, bias included.
+    hard_iron_sigma_uT: what to allow for where no calibration is given.
     Returns Headings. Raises InputError for shapes, frames, settings or a sample time that cannot be used;
     CalibrationRefused for a calibration that was refused.
     Method: cross products of the vertical and the calibrated field; first-order propagation (JCGM 100:2008, 5.1).
@@ -89,7 +92,7 @@ def compute_heading(mag_uT, acc_mps2=None, gyr_radps=None, t_s=None, *, field, c
                          "convert one of them")
     convergence, grid = (0.0, None) if crs is None else grid_convergence(crs, field.lat_deg, field.lon_deg)
     setup = {
-        "calibration": _core_calibration(calibration, body),
+        "calibration": _core_calibration(calibration, body, hard_iron_sigma_uT),
         "mag_noise_uT": mag_noise_uT if mag_noise_uT is not None
         else MAG_NOISE_UT if calibration is None else calibration.noise_uT,
         "declination_deg": field.declination_deg, "declination_sigma_deg": field.sigma.declination_deg,
@@ -130,10 +133,10 @@ def _times(t_s, count, needed):
     return times
 
 
-def _core_calibration(calibration, body):
+def _core_calibration(calibration, body, hard_iron_sigma_uT):
     if calibration is None:
         hard, soft = np.zeros(3), np.eye(3)
-        covariance = np.diag([UNCALIBRATED_HARD_IRON_UT**2] * 3 + [UNCALIBRATED_SOFT_IRON**2] * 6)
+        covariance = np.diag([hard_iron_sigma_uT**2] * 3 + [SOFT_IRON_SIGMA**2] * 6)
     else:
         calibration.check_usable()
         hard, soft, covariance = calibration.hard_iron_uT, calibration.soft_iron, calibration.covariance

@@ -13,9 +13,11 @@ ELEMENTS = ("north_nT", "east_nT", "down_nT", "horizontal_nT", "total_nT", "decl
 # Worldwide RMS growth per year of WMM2020's error, carried forward and held against IGRF-14, 2021 to 2025: the slope of
 # the X, Y, Z columns (X 12.4 to 47.9 nT, Y 12.1 to 54.2, Z 20.3 to 86.9 in four years).
 RATE_SIGMA_NT_PER_YR = (8.9, 10.5, 16.7)
-# Beyond a model's validity the growth itself grows, as the field's rate changes: the time over which it doubles.
-# tests/derive_extrapolation_growth.py measures it from the shipped models.
-GROWTH_DOUBLES_YR = 15.0
+# A forecast `age` years past its epoch errs by rate * age * (1 + (age - 5) / G): the growth itself grows once the five
+# years of validity are over, as the field's rate changes. tests/derive_extrapolation_growth.py measures G from IGRF-14's
+# snapshots: 18 to 31 years since 1980, 7 to 29 with the poorer slopes since 1950.
+FORECAST_YR = 5.0
+GROWTH_DOUBLES_YR = 20.0
 
 
 @dataclass(frozen=True)
@@ -53,7 +55,9 @@ def model_sigma(error_model, years_outside, year, values):
         entry = error_model[name]
         return np.interp(year, error_model["year"], entry) if np.ndim(entry) else np.full(np.shape(year), float(entry))
 
-    grown = years_outside * (1 + years_outside / GROWTH_DOUBLES_YR)
+    # the published figures hold the forecast's error within its five years: what is added is the rest of the square
+    age = (FORECAST_YR + years_outside) * (1 + years_outside / GROWTH_DOUBLES_YR)
+    grown = np.sqrt(age**2 - FORECAST_YR**2)
     rate = dict(zip(("north_nT", "east_nT", "down_nT"), (np.full(np.shape(year), r) for r in RATE_SIGMA_NT_PER_YR),
                     strict=True))
     rate = _of_elements(rate, values)

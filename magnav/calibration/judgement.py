@@ -1,0 +1,91 @@
+"""What the data of a calibration can tell: predicted heading error, directions left undetermined, the verdict.
+
+Residuals do not reveal a motion that covers too little: an ellipsoid far away fits a small patch as well. What does is
+the information that is left when the patch counts once: one observation for each cell of the sphere that was seen, with
+the error of a field that is not quite the same everywhere. Its covariance must still give a heading.
+"""
+
+import numpy as np
+
+from .coverage import CELLS, cell_of
+from .ellipsoid import PAIRS
+
+# Every limit is our choice; the reason stands beside it.
+SMALLEST_MISFIT = 0.01  # of the field: indoors and near vehicles the field differs by more from place to place
+LARGEST_HEADING_SIGMA_DEG = 5.0  # twice this is 10 degrees: no better than an uncalibrated sensor in a clean mounting
+LARGEST_CONDITION = 1.8  # soft iron stretches one axis against another by some ten per cent, seldom by half
+LARGEST_OFFSET = 4.0  # of the field: beyond, the sensor's range and its scale error, not iron, are in question
+LARGEST_RESIDUAL = 0.05  # of the field: beyond, the iron or the field changed during the recording
+LARGEST_DRIFT = 0.04  # of the field: the same, seen in the mean of a tenth of the recording
+FEWEST_SAMPLES = 50
+DEFAULT_INCLINATION_DEG = 60.0  # where no field is given: a middle latitude
+MAGNITUDE_MARGIN = 0.05
+DIP_MARGIN_DEG = 2.0
+
+NAMES = ("offset along x", "offset along y", "offset along z", "scale along x", "scale along y", "scale along z",
+         "skew between x and y", "skew between x and z", "skew between y and z")
+
+
+def effective_count(residual):
+    """How many independent residuals a series of correlated ones is worth (initial positive sequence: C. J. Geyer,
+    Statistical Science 7, 473-483, 1992)."""
+    n = len(residual)
+    r = residual - residual.mean()
+    spectrum = np.fft.rfft(r, 2 * n)
+    correlation = np.fft.irfft(spectrum * np.conj(spectrum))[:n]
+    if not correlation[0] > 0:
+        return float(n)
+    pairs = correlation[1:n - n % 2 - 1:2] + correlation[2:n - n % 2:2] if n > 3 else np.zeros(0)
+    pairs = pairs / correlation[0]
+    stop = int(np.argmax(pairs < 0)) if np.any(pairs < 0) else len(pairs)
+    return n / (1.0 + 2.0 * float(np.sum(pairs[:stop])))
+
+
+def worst_heading_sigma_deg(covariance, soft_iron, field_uT, inclination_deg):
+    """Largest heading error (one sigma) that the parameters' covariance causes, over all level headings."""
+    heading = np.radians(np.arange(0.0, 360.0, 5.0))
+    zero, one = np.zeros_like(heading), np.ones_like(heading)
+    north = np.stack([np.cos(heading), -np.sin(heading), zero], 1)
+    east = np.stack([np.sin(heading), np.cos(heading), zero], 1)
+    down = np.stack([zero, zero, one], 1)
+    dip = np.radians(inclination_deg)
+    reading = field_uT * (np.cos(dip) * north + np.sin(dip) * down) @ np.linalg.inv(soft_iron)
+    gradient = np.empty((len(heading), 9))
+    gradient[:, :3] = -east @ soft_iron
+    for k, (i, j) in enumerate(PAIRS, 3):
+        gradient[:, k] = east[:, i] * reading[:, j] + (east[:, j] * reading[:, i] if i != j else 0.0)
+    variance = np.einsum("ni,ij,nj->n", gradient, covariance, gradient)
+    return float(np.degrees(np.sqrt(max(variance.max(), 0.0)) / (field_uT * np.cos(dip))))
+
+
+def covariance_by_cells(fit, direction, misfit_uT):
+    """Covariance of the parameters where each cell seen counts as one observation with the error `misfit_uT`."""
+    cell = cell_of(direction)
+    weight = 1.0 / np.bincount(cell, minlength=CELLS)[cell]
+    return inverse((fit.jacobian * weight[:, None]).T @ fit.jacobian) * misfit_uT**2
+
+
+def inverse(information):
+    """Inverse of an information matrix; what it does not determine gets a very large variance, not an error."""
+    size = np.sqrt(np.maximum(np.diag(information), 1e-30))
+    values, vectors = np.linalg.eigh(information / np.outer(size, size))
+    values = np.maximum(values, 1e-14)
+    return (vectors / values) @ vectors.T / np.outer(size, size)
+
+
+def undetermined(covariance, field_uT):
+    """The weakest direction in plain words, and the motion that would determine it."""
+    scale = np.array([1.0] * 3 + [field_uT] * 6)
+    values, vectors = np.linalg.eigh(covariance * np.outer(scale, scale))
+    weakest = np.abs(vectors[:, -1])
+    named = [NAMES[k] for k in np.argsort(-weakest) if weakest[k] > 0.4]
+    axes = sorted({axis for name in named for axis in "xyz" if f" {axis}" in name})
+    return (f"{' with the '.join(named)} is not determined (error about {np.sqrt(values[-1]):.0f} uT): turn the sensor so "
+            f"that the field points along and against {' and '.join(axes)}")
+
+
+def drift_uT(residual):
+    """Largest mean residual of a tenth of the recording, in its order."""
+    if len(residual) < 100:
+        return 0.0
+    return float(max(abs(part.mean()) for part in np.array_split(residual, 10)))
