@@ -3,6 +3,7 @@
 A column is known by its quantity and its unit: mag_x_uT, acc_z_mps2, gyr_y_radps, t_s; other units are in `UNITS`.
 """
 
+import bisect
 import dataclasses
 
 import numpy as np
@@ -71,7 +72,30 @@ def read_log(path, names=None, progress=None):
         values = np.column_stack([np.concatenate(parts[name]) for name in columns]) * factor
         return values[:, 0] if quantity == "t" else values
 
-    return SensorLog(str(path), joined("t"), joined("mag"), joined("acc"), joined("gyr"), np.concatenate(lines), bad)
+    lines, t_s = np.concatenate(lines), joined("t")
+    keep = np.ones(len(lines), dtype=bool) if t_s is None else _increasing(t_s)
+    bad += [(int(line), "time does not increase", "") for line in lines[~keep]]
+    sensors = [values if values is None else values[keep] for values in (t_s, *map(joined, ("mag", "acc", "gyr")))]
+    return SensorLog(str(path), *sensors, lines[keep], sorted(bad))
+
+
+def _increasing(t_s):
+    """Mask of the longest run of samples whose times increase: one wild time costs one sample, not all after it."""
+    if np.all(np.diff(t_s) > 0):
+        return np.ones(len(t_s), dtype=bool)
+    ends, ends_at, before = [], [], np.full(len(t_s), -1)
+    for i, t in enumerate(t_s.tolist()):
+        place = bisect.bisect_left(ends, t)
+        if ends[place:place + 1] == [t]:
+            continue  # of equal times the first stays
+        before[i] = ends_at[place - 1] if place else -1
+        ends[place:place + 1], ends_at[place:place + 1] = [t], [i]
+    keep = np.zeros(len(t_s), dtype=bool)
+    i = ends_at[-1]
+    while i >= 0:
+        keep[i] = True
+        i = before[i]
+    return keep
 
 
 def _rename(table, names):

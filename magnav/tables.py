@@ -38,14 +38,21 @@ class Table:
         except OSError as error:
             raise LogFileError(f"{path}: cannot be opened ({error.strerror})") from None
         self._line = 0
+        try:
+            self._read_header()
+        except LogFileError:
+            self._file.close()
+            raise
+
+    def _read_header(self):
         header = next(self._text_lines(), None)
         if header is None:
-            raise LogFileError(f"{path}: empty: a header row with the columns' names is needed")
+            raise LogFileError(f"{self.path}: empty: a header row with the columns' names is needed")
         self._delimiter = max(",;\t", key=header.count)
         self.names = [name.strip() for name in self._split(header)]
         twice = {name for name in self.names if self.names.count(name) > 1}
         if twice:
-            raise LogFileError(f"{path}, line {self._line}: column {sorted(twice)[0]!r} is there twice")
+            raise LogFileError(f"{self.path}, line {self._line}: column {sorted(twice)[0]!r} is there twice")
 
     def __enter__(self):
         return self

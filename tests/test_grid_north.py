@@ -3,7 +3,7 @@
 import numpy as np
 import pyproj
 import pytest
-from hypothesis import given, settings
+from hypothesis import assume, given, settings
 from hypothesis import strategies as st
 
 from magnav.errors import InputError
@@ -72,6 +72,7 @@ def test_ups_at_and_near_the_poles():
 @given(st.floats(-79.9, 83.9), st.floats(-180, 180, exclude_max=True))
 def test_utm_zone_is_one_that_pyprojs_database_gives(lat, lon):
     """pyproj's copy of the EPSG registry lists the zones whose area of use holds the point."""
+    assume(abs(lon / 6 - round(lon / 6)) > 1e-9)  # on the meridian between two zones either is right
     code = int(utm_epsg(lat, lon))
     found = pyproj.database.query_utm_crs_info(
         "WGS 84", pyproj.aoi.AreaOfInterest(lon, lat, lon, lat), contains=True)

@@ -87,6 +87,16 @@ def test_binary_missing_and_endless_lines(tmp_path):
         read_log(write(tmp_path, b"mag_x_uT,mag_y_uT,mag_z_uT\n1,2\x00,3\n", mode="wb"))
 
 
+def test_times_that_do_not_increase_cost_as_few_samples_as_can_be(tmp_path):
+    times = [0, 1, 2, 2, 3, 1e9, 4, 5, 3.5, 6]
+    rows = "".join(f"{t},1,2,{i}\n" for i, t in enumerate(times))
+    log = read_log(write(tmp_path, "t_s,mag_x_uT,mag_y_uT,mag_z_uT\n" + rows))
+    assert log.t_s.tolist() == [0, 1, 2, 3, 4, 5, 6]
+    assert [(line, reason) for line, reason, _ in log.bad][1:] == [
+        (7, "time does not increase"), (10, "time does not increase")]
+    assert log.bad[0][0] == 5 and len(log.lines) == len(log.mag_uT) == 7
+
+
 def test_progress_reaches_the_end(tmp_path):
     seen = []
     rows = "".join(f"{i},2,3\n" for i in range(50_000))
