@@ -66,7 +66,7 @@ def degree_of(terms):
 
 
 def cartesian(lat_deg, lon_deg, height_m):
-    """Earth-fixed x, y, z in metres of a geodetic WGS84 point (prime-vertical radius, as in any textbook of geodesy)."""
+    """Earth-fixed x, y, z in metres of a geodetic WGS84 point (by the prime-vertical radius, textbook geodesy)."""
     lat, lon, height = (mpf(v) for v in (lat_deg, lon_deg, height_m))
     f = 1 / mpf(WGS84_INVERSE_FLATTENING)
     e2 = f * (2 - f)

@@ -1,4 +1,4 @@
-"""Dates as decimal years, against calendar arithmetic in whole numbers (the standard library's calendar and fractions)."""
+"""Dates as decimal years, against calendar arithmetic in whole numbers (the standard library's calendar, fractions)."""
 
 import calendar
 import datetime as dt
@@ -115,8 +115,28 @@ def test_the_first_bad_date_is_named(when, where):
         decimal_year(when)
 
 
+def test_missing_dates_are_errors_or_nan_as_asked():
+    holes = [np.array([2025.0, np.nan]), [2025.0, float("nan")], np.array(["2025-01-01", "NaT"], dtype="M8[D]"),
+             np.array(["2025-01-01", "NaT"], dtype="M8[ns]"), np.ma.array([2025.0, 1e9], mask=[0, 1]),
+             np.ma.array([2025, 2026], mask=[0, 1]), np.ma.array(["2025-01-01", "2026"], dtype="M8[D]", mask=[0, 1]),
+             np.ma.array(["2025-01-01", "soon"], mask=[0, 1]), [np.datetime64("2025"), np.datetime64("NaT")]]
+    for when in holes:
+        years = decimal_year(when, missing="nan")
+        assert years[0] == 2025.0 and np.isnan(years[1])
+        with pytest.raises(InputError, match="element 1"):
+            decimal_year(when)
+    for one in (float("nan"), np.datetime64("NaT"), np.ma.masked):
+        assert np.isnan(decimal_year(one, missing="nan"))
+        with pytest.raises(InputError):
+            decimal_year(one)
+    # what is there and is no date stays an error
+    for when in ([2025.0, "soon"], [2025.0, np.inf], np.array([2025.0, 1e5])):
+        with pytest.raises(InputError, match="element 1"):
+            decimal_year(when, missing="nan")
+
+
 def test_the_message_says_what_is_accepted():
-    with pytest.raises(InputError, match="'soon' cannot be read; accepted: a datetime or date, .* ISO 8601"):
+    with pytest.raises(InputError, match=r"'soon' cannot be read; accepted: a datetime or date, .* ISO 8601"):
         decimal_year("soon")
     with pytest.raises(InputError, match="NoneType; accepted: a datetime"):
         decimal_year(None)

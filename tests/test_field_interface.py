@@ -10,7 +10,7 @@ from derive_extrapolation_growth import straight_line_errors
 
 import magnav
 from magnav import core
-from magnav.core._core import lib
+from magnav.core import lib
 from magnav.errors import InputError, MagnavError, OutOfValidityError
 from magnav.uncertainty.model_error import RATE_SIGMA_NT_PER_YR, SIGMA_NAMES
 
@@ -39,7 +39,7 @@ def test_scalars_give_floats(wmm):
         assert all(type(v) is float for v in vars(field.sigma).values())
         assert isinstance(field.flags, magnav.Flag) and type(field.status) is int and field.status == 0
         assert field.model == "WMM2025"
-        assert field == wmm.field(*PLACE, when=2026.0) or np.isnan(field.grid_variation_deg)
+        assert np.isnan(field.grid_variation_deg)
         assert [getattr(field, n) for n in VALUES] == [getattr(wmm.field(*PLACE, when=2026.0), n) for n in VALUES]
 
 
@@ -149,8 +149,7 @@ def test_the_ends_of_the_ranges_belong_to_them(wmm, point):
 def test_the_first_bad_index_and_the_count_are_named(wmm):
     lat = np.zeros((3, 4))
     lat[1, 2], lat[2, 0] = 95.0, -95.0
-    with pytest.raises(InputError, match=r"latitude .* at index \(1, 2\): lat_deg 95, .*\(2 points are bad; this is the "
-                                         "first"):
+    with pytest.raises(InputError, match=r"latitude .* at index \(1, 2\): lat_deg 95, .*\(2 points are bad; this is"):
         wmm.field(lat, 0.0, when=2026.0)
     with pytest.raises(InputError, match=r"at index \(2,\)") as caught:
         wmm.field([1.0, 2.0, 300.0], 0.0, when=2026.0)
@@ -189,7 +188,7 @@ def test_bad_nan_reports_each_row_and_computes_the_others(wmm):
         one = wmm.field(float(lat[i]), 5.0, when=2026.0)
         assert [getattr(field, n)[i] for n in ELEMENTS] == [getattr(one, n) for n in ELEMENTS]
     assert field.flags[1:5].tolist() == [0, 0, 0, 0]
-    with pytest.raises(InputError, match=r"at index \(1,\).*3 points are bad|NaN is not a decimal year|date nan"):
+    with pytest.raises(InputError, match=r"date nan is not a decimal year .*element 2"):
         wmm.field(lat, 5.0, when=when)
     with pytest.raises(InputError, match=r"NaN.*at index \(1,\).*\(2 points are bad"):
         wmm.field(lat, 5.0, when=2026.0)
@@ -334,7 +333,8 @@ def test_no_declination_is_said_as_nan(wmm):
     assert np.isnan(field.declination_deg) and np.isnan(field.declination_deg_per_yr)
     assert np.isnan(field.grid_variation_deg) and field.inclination_deg == 90
     assert field.down_nT == pytest.approx(2 * 29990 * (6371.2 / 6356.752314245) ** 3, rel=1e-12)
-    assert field.as_dict()["declination_deg"] is None
+    plain = json.loads(json.dumps(field.as_dict(), allow_nan=False))
+    assert plain["declination_deg"] is None and plain["sigma"]["declination_deg"] is None
 
 
 # ---- the model by its date ----

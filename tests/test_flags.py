@@ -10,8 +10,7 @@ import pytest
 import magnav
 from magnav import Flag
 from magnav.core import Flag as CoreFlag
-from magnav.core import flag_text, flags_in
-from magnav.core._core import ffi, lib
+from magnav.core import ffi, flag_text, flags_in, lib
 from magnav.field.coefficients import Coefficients
 
 MID = (45.0, 10.0)

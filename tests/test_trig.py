@@ -1,5 +1,5 @@
 """The core's sine, cosine and arctangent against mpmath (general reference library), in units in the last place of the
-true value. Largest errors measured over nine million random arguments: sine and cosine 2.04, arctangent 2.54.
+true value. Largest errors measured over some eight million random arguments: sine and cosine 1.63, arctangent 2.54.
 """
 
 import math
@@ -8,10 +8,10 @@ import numpy as np
 import pytest
 from mpmath import mp, mpf
 
-from magnav.core import atan2_deg, sincos_deg
-from magnav.core._core import lib
+from magnav.core import atan2_deg, lib, sincos_deg
 
-WITHIN_ULP = 3  # what the core's header states
+# what the core's header states
+SINE_ULP, ARCTANGENT_ULP = 2, 3
 DIGITS = 60
 LARGEST_DEG = 1e6
 
@@ -31,7 +31,8 @@ def angles():
         rng.uniform(-360, 360, 8000), rng.uniform(-LARGEST_DEG, LARGEST_DEG, 4000),
         rng.choice([-1, 1], 2000) * 10 ** rng.uniform(-300, 6, 2000), grid, half,
         *(np.nextafter(values, way) for values in (grid, half) for way in (-np.inf, np.inf)),
-        [-LARGEST_DEG, LARGEST_DEG, 5e-324, 2.3e-308]]).tolist()
+        [-LARGEST_DEG, LARGEST_DEG, 5e-324, 2.3e-308],
+        [14.365098693006452]]).tolist()  # the worst one found
 
 
 def test_sine_and_cosine_over_the_whole_range():
@@ -42,7 +43,7 @@ def test_sine_and_cosine_over_the_whole_range():
             if math.fmod(x, 90.0) == 0.0:
                 continue  # exact, and mpmath's pi is not: see the test below
             worst = [max(w, ulps(found, t)) for w, found, t in zip(worst, sincos_deg(x), true, strict=True)]
-    assert max(worst) <= WITHIN_ULP, worst
+    assert max(worst) <= SINE_ULP, worst
 
 
 @pytest.mark.parametrize("turns", [0, 1, -1, 2, -2, 7, -7, 2777, -2777])
@@ -85,7 +86,9 @@ def points():
     slopes = np.concatenate([np.tan(np.radians([22.5, 45.0, 67.5])), rng.uniform(0, 1, 6000)])
     wide = rng.choice([-1, 1], (4000, 2)) * 10 ** rng.uniform(-150, 150, (4000, 2))
     near = np.column_stack([slopes * (scale := rng.uniform(1, 2, slopes.size)), scale])
-    edges = np.array([[np.nextafter(1.0, way), 1.0] for way in (0, 2)] + [[half_of_largest, half_of_largest / 3]])
+    worst_found = [0.064087575174304, 1.9101194952005274]
+    edges = np.array([[np.nextafter(1.0, way), 1.0] for way in (0, 2)]
+                     + [[half_of_largest, half_of_largest / 3], worst_found])
     return np.vstack([rng.normal(size=(6000, 2)), near, edges, edges[:, ::-1], wide, -near[:1000]]).tolist()
 
 
@@ -96,7 +99,7 @@ def test_arctangent_over_all_quadrants_and_slopes():
             found, true = atan2_deg(y, x), mp.degrees(mp.atan2(mpf(y), mpf(x)))
             # the range is (-180, 180]: what would round to -180 is 180, the same direction
             worst = max(worst, ulps(found, true + 360 if found == 180 and true < 0 else true))
-    assert worst <= WITHIN_ULP
+    assert worst <= ARCTANGENT_ULP
 
 
 def test_arctangent_whose_result_is_below_the_normal_numbers():

@@ -96,7 +96,7 @@ int32_t magnav_max_degree(void);
 
 /* Sine and cosine of an angle in degrees, |x| <= 1e6; exact at multiples of 90. Within 2 units in the last place. */
 void magnav_sincos_deg(magnav_real x_deg, magnav_real *sine, magnav_real *cosine);
-/* Angle of the point (x, y) from the x axis towards y, in (-180, 180]; 0 for (0, 0). Within 2 units in the last place
+/* Angle of the point (x, y) from the x axis towards y, in (-180, 180]; 0 for (0, 0). Within 3 units in the last place
  * for coordinates below half the largest magnav_real. */
 magnav_real magnav_atan2_deg(magnav_real y, magnav_real x);
 /* The same angle in [0, 360) for one in [-720, 720]. */

@@ -1,7 +1,7 @@
 /* The vertical in the body frame from the accelerometer, carried by the gyroscope where there is one.
  *
  * A scalar Kalman filter on a unit vector: the gyroscope turns the vector (d' = d x w) and its drift adds variance; the
- * sample's -acc / |acc| draws it back. The acceleration of the body itself is not seen but for its trace in | |acc| - g |:
+ * sample's -acc / |acc| draws it back. The acceleration of the body itself is seen only by its trace in | |acc| - g |:
  * the running mean square of that is taken as the variance of one component. As it lasts, half a second here, a sample
  * inside that time brings no new information: its variance is raised by the ratio of the two times. */
 #include "real.h"

@@ -17,8 +17,8 @@ PARAMETERS = ("b_x", "b_y", "b_z", "W_xx", "W_yy", "W_zz", "W_xy", "W_xz", "W_yz
 class Calibration:
     """Earth field B = soft_iron (m - hard_iron_uT) from a reading m, both in the frame `body`.
 
-    hard_iron_uT (3,); soft_iron (3, 3), symmetric, no unit; covariance (9, 9) of the parameters in the order b_x b_y b_z
-    W_xx W_yy W_zz W_xy W_xz W_yz (uT, uT and none); noise_uT, one axis, one sample, what the model does not explain
+    hard_iron_uT (3,); soft_iron (3, 3), symmetric, no unit; covariance (9, 9) of the parameters in the order b_x b_y
+    b_z W_xx W_yy W_zz W_xy W_xz W_yz (uT, uT and none); noise_uT, one axis, one sample, what the model does not explain
     included. verdict: "good" or "refused", with `reasons` in plain words; `warnings` for what a good one leaves open.
     scale: "model total field" or "relative" (determinant of soft_iron 1). coverage: fraction of the sphere seen;
     predicted_heading_sigma_deg: worst level heading's error from the calibration alone.

@@ -80,8 +80,8 @@ def undetermined(covariance, field_uT):
     weakest = np.abs(vectors[:, -1])
     named = [NAMES[k] for k in np.argsort(-weakest) if weakest[k] > 0.4]
     axes = sorted({axis for name in named for axis in "xyz" if f" {axis}" in name})
-    return (f"{' with the '.join(named)} is not determined (error about {np.sqrt(values[-1]):.0f} uT): turn the sensor so "
-            f"that the field points along and against {' and '.join(axes)}")
+    return (f"{' with the '.join(named)} is not determined (error about {np.sqrt(values[-1]):.0f} uT): turn the sensor "
+            f"so that the field points along and against {' and '.join(axes)}")
 
 
 def drift_uT(residual):

@@ -14,8 +14,8 @@ ELEMENTS = ("north_nT", "east_nT", "down_nT", "horizontal_nT", "total_nT", "decl
 # the X, Y, Z columns (X 12.4 to 47.9 nT, Y 12.1 to 54.2, Z 20.3 to 86.9 in four years).
 RATE_SIGMA_NT_PER_YR = (8.9, 10.5, 16.7)
 # A forecast `age` years past its epoch errs by rate * age * (1 + (age - 5) / G): the growth itself grows once the five
-# years of validity are over, as the field's rate changes. tests/derive_extrapolation_growth.py measures G from IGRF-14's
-# snapshots: 18 to 31 years since 1980, 7 to 29 with the poorer slopes since 1950.
+# years of validity are over, as the field's rate changes. From IGRF-14's snapshots G is 18 to 31 years since 1980, 7 to
+# 29 with the poorer slopes since 1950: tests/derive_extrapolation_growth.py.
 FORECAST_YR = 5.0
 GROWTH_DOUBLES_YR = 20.0
 

@@ -25,7 +25,7 @@ def read(lines):
         lines.fail(number, f"epoch {words[0]} is not a year from 1000 to 3000")
     values, degree = [], 0
     expected = (1, 0)
-    for at, (number, row) in enumerate(lines.rows[1:], 1):
+    for number, row in lines.rows[1:]:
         words = row.split()
         if _closing(words):
             break
@@ -45,9 +45,10 @@ def read(lines):
         lines.fail(lines.rows[-1][0], "the closing lines of nines are missing: the file is cut off")
     if expected[1] != 0 or not values:
         lines.fail(number, f"degree {expected[0]} is not complete: order {expected[1]} is missing")
-    tail = lines.rows[at:]
+    tail = lines.rows[number - 1:]
     if len(tail) != 2 or not _closing(tail[1][1].split()):
-        lines.fail(tail[min(1, len(tail) - 1)][0], "two closing lines of nines must end the file")
+        wrong = tail[2] if len(tail) > 2 and _closing(tail[1][1].split()) else tail[min(1, len(tail) - 1)]
+        lines.fail(wrong[0], "two closing lines of nines must end the file")
     polynomials = np.zeros((1, 2, term_count(degree)))
     for n, m, (g, h, g_rate, h_rate) in values:
         polynomials[0, :, term_index(n, m)] = g, g_rate

@@ -105,6 +105,7 @@ def _pieces(lines, number, years, values, order, steps):
             fit = np.linalg.lstsq(powers, values[:, here].T, rcond=None)[0]
         misfit = np.abs(powers @ fit - values[:, here].T).max()
         if misfit > LARGEST_MISFIT_NT:
-            lines.fail(number, f"the values from {years[start]:g} are no polynomial of order {order}: off by {misfit:.3g} nT")
+            lines.fail(number, f"the values from {years[start]:g} are no polynomial of order {order}: "
+                               f"off by {misfit:.3g} nT")
         polynomials[i] = fit / length ** np.arange(order)[:, np.newaxis]
     return breaks, polynomials

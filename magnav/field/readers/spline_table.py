@@ -23,7 +23,7 @@ def read(lines):
     rows = [(number, text) for number, text in lines.rows if text.strip() and not text.startswith("#")]
     number, header = rows[0]
     names = header.split(",")[1:]
-    degree = int(round((len(names) + 1) ** 0.5)) - 1
+    degree = round((len(names) + 1) ** 0.5) - 1
     due = [f"{kind}{n}_{m}" for n in range(1, degree + 1) for m in range(n + 1) for kind in ("gh" if m else "g")]
     if names != due or not degree:
         wrong = next((f"{a} where {b} is due" for a, b in zip(names, due, strict=False) if a != b), "not complete")
@@ -37,7 +37,8 @@ def read(lines):
         values.append([lines.number(number, cell, name) for cell, name in zip(cells[1:], names, strict=True)])
         step = starts[min(1, len(starts) - 1)] - starts[0]
         if len(starts) > 1 and (step <= 0 or abs(starts[-1] - starts[0] - step * (len(starts) - 1)) > 1e-6):
-            lines.fail(number, f"knot {cells[0]} is not one step after the row before: a row is missing, twice or out of order")
+            lines.fail(number, f"knot {cells[0]} is not one step after the row before: a row is missing, twice or out "
+                               "of order")
     if len(starts) < 4:
         lines.fail(number, "fewer than four splines: the file is cut off")
     comments = [text.lstrip("# ").strip() for _, text in lines.rows if text.startswith("#")]
@@ -47,7 +48,8 @@ def read(lines):
     first, last = float(span[1]), float(span[2])
     breaks = starts[0] + step * np.arange(3, len(starts) + 1)
     if not breaks[0] - 1e-9 <= first < last <= breaks[-1] + 1e-9:
-        lines.fail(number, f"the splines serve {breaks[0]:g} to {breaks[-1]:g}, not the validity {first:g} to {last:g}: rows are missing")
+        lines.fail(number, f"the splines serve {breaks[0]:g} to {breaks[-1]:g}, not the validity {first:g} to "
+                           f"{last:g}: rows are missing")
     values = np.array(values)
     pieces = len(values) - 3
     windows = np.stack([values[3 - j: 3 - j + pieces] for j in range(4)], axis=1)
