@@ -178,7 +178,8 @@ HOSTILE = [
     # values that are no numbers, or absurd
     *((kind, edit(20, -1, text), 21, words) for kind in ("COF", "SHC", "TABLE", "SPLINES")
       for text, words in (("NaN", "not a number"), ("inf", "not a number"), ("1e400", "beyond"),
-                          ("1_0", "not a number"), ("0x10", "not a number"), ("12.3.4", "not a number"), ("9999999", "beyond"),
+                          ("1_0", "not a number"), ("0x10", "not a number"), ("12.3.4", "not a number"),
+                          ("9999999", "beyond"),
                           ("1" * 400, "beyond"), ("--5", "not a number"))),
     # degrees and orders
     ("COF", edit(20, 0, "10000"), 21, "degree 10000 is outside 1 to 800"),

@@ -1,6 +1,6 @@
 """Calibration of a magnetometer: hard and soft iron from a log, with a verdict."""
 
-from .calibrate import calibrate
 from .calibration import Calibration
+from .from_log import calibrate
 
 __all__ = ["Calibration", "calibrate"]

@@ -13,11 +13,13 @@ from .ellipsoid import PAIRS
 # Every limit is our choice; the reason stands beside it.
 SMALLEST_MISFIT = 0.01  # of the field: indoors and near vehicles the field differs by more from place to place
 LARGEST_HEADING_SIGMA_DEG = 5.0  # twice this is 10 degrees: no better than an uncalibrated sensor in a clean mounting
+WEAK = 0.02  # of the field: a direction less certain than this is for the motion to mend, not for the noise
 LARGEST_CONDITION = 1.8  # soft iron stretches one axis against another by some ten per cent, seldom by half
 LARGEST_OFFSET = 4.0  # of the field: beyond, the sensor's range and its scale error, not iron, are in question
 LARGEST_RESIDUAL = 0.05  # of the field: beyond, the iron or the field changed during the recording
 LARGEST_DRIFT = 0.04  # of the field: the same, seen in the mean of a tenth of the recording
 FEWEST_SAMPLES = 50
+USE_TILT_DEG = 30.0  # how far from level headings are still asked for: a small craft in a turn
 DEFAULT_INCLINATION_DEG = 60.0  # where no field is given: a middle latitude
 MAGNITUDE_MARGIN = 0.05
 DIP_MARGIN_DEG = 2.0
@@ -41,16 +43,26 @@ def effective_count(residual):
     return n / (1.0 + 2.0 * float(np.sum(pairs[:stop])))
 
 
-def worst_heading_sigma_deg(covariance, soft_iron, field_uT, inclination_deg):
-    """Largest heading error (one sigma) that the parameters' covariance causes, over all level headings."""
-    heading = np.radians(np.arange(0.0, 360.0, 5.0))
+def _attitudes():
+    """North, east and down in the body frame, (n, 3) each: every 10 degrees of heading, level and at USE_TILT_DEG."""
+    heading = np.radians(np.arange(0.0, 360.0, 10.0))
     zero, one = np.zeros_like(heading), np.ones_like(heading)
-    north = np.stack([np.cos(heading), -np.sin(heading), zero], 1)
-    east = np.stack([np.sin(heading), np.cos(heading), zero], 1)
-    down = np.stack([zero, zero, one], 1)
+    level = np.stack([np.stack([np.cos(heading), -np.sin(heading), zero], 1),
+                      np.stack([np.sin(heading), np.cos(heading), zero], 1), np.stack([zero, zero, one], 1)])
+    c, s = np.cos(np.radians(USE_TILT_DEG)), np.sin(np.radians(USE_TILT_DEG))
+    turns = [np.eye(3)]
+    for sine in (s, -s):
+        turns.append(np.array([[1, 0, 0], [0, c, -sine], [0, sine, c]]))
+        turns.append(np.array([[c, 0, sine], [0, 1, 0], [-sine, 0, c]]))
+    return np.concatenate([level @ turn.T for turn in turns], axis=1)
+
+
+def worst_heading_sigma_deg(covariance, soft_iron, field_uT, inclination_deg):
+    """Largest heading error (one sigma) that the parameters' covariance causes, level and tilted by USE_TILT_DEG."""
+    north, east, down = _attitudes()
     dip = np.radians(inclination_deg)
     reading = field_uT * (np.cos(dip) * north + np.sin(dip) * down) @ np.linalg.inv(soft_iron)
-    gradient = np.empty((len(heading), 9))
+    gradient = np.empty((len(north), 9))
     gradient[:, :3] = -east @ soft_iron
     for k, (i, j) in enumerate(PAIRS, 3):
         gradient[:, k] = east[:, i] * reading[:, j] + (east[:, j] * reading[:, i] if i != j else 0.0)
@@ -73,15 +85,16 @@ def inverse(information):
     return (vectors / values) @ vectors.T / np.outer(size, size)
 
 
-def undetermined(covariance, field_uT):
-    """The weakest direction in plain words, and the motion that would determine it."""
+def weakest(covariance, field_uT):
+    """Error in uT of the direction least determined, and in plain words what it is and which motion would help."""
     scale = np.array([1.0] * 3 + [field_uT] * 6)
     values, vectors = np.linalg.eigh(covariance * np.outer(scale, scale))
-    weakest = np.abs(vectors[:, -1])
-    named = [NAMES[k] for k in np.argsort(-weakest) if weakest[k] > 0.4]
+    parts = np.abs(vectors[:, -1])
+    named = [NAMES[k] for k in np.argsort(-parts) if parts[k] > 0.4]
     axes = sorted({axis for name in named for axis in "xyz" if f" {axis}" in name})
-    return (f"{' with the '.join(named)} is not determined (error about {np.sqrt(values[-1]):.0f} uT): turn the sensor "
-            f"so that the field points along and against {' and '.join(axes)}")
+    error_uT = float(np.sqrt(values[-1]))
+    return error_uT, (f"{' with the '.join(named)} is not determined (error about {error_uT:.0f} uT): turn the sensor "
+                      f"so that the field points along and against {' and '.join(axes)}")
 
 
 def drift_uT(residual):

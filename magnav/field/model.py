@@ -108,7 +108,7 @@ def _field(chooser, lat_deg, lon_deg, height_m, when, extrapolate, bad):
             sigma[name][here] = values
     if bad == "raise":
         _raise_first(status, lat, lon, height, year, shape, models, which)
-    return _result(flat, out, status, sigma, names, models, shape)
+    return _result(flat, out, status, sigma, names, chooser.name, shape)
 
 
 def _raise_first(status, lat, lon, height, year, shape, models, which):
@@ -127,7 +127,7 @@ def _raise_first(status, lat, lon, height, year, shape, models, which):
                f"date {year[i]:g}{many}")
 
 
-def _result(flat, out, status, sigma, names, models, shape):
+def _result(flat, out, status, sigma, names, fallback, shape):
     failed = status != 0
     undefined = (out["flags"] & core.Flag.NO_DECLINATION) != 0
     values = {name: out[name] for name in _VALUES}
@@ -144,8 +144,8 @@ def _result(flat, out, status, sigma, names, models, shape):
 
     positions = dict(zip(("lat_deg", "lon_deg", "height_m", "year"), map(shaped, flat), strict=True))
     flags = out["flags"].astype(np.uint32)
-    one_name = len(models) == 1 or len(set(names.tolist())) == 1
+    one_name = len(set(names.tolist())) <= 1
     return Field(**positions, **{name: shaped(v) for name, v in values.items()},
                  sigma=Sigma(**{name: shaped(sigma[name]) for name in SIGMA_NAMES}),
-                 model=(names[0] if names.size else models[0].name) if one_name or not shape else names.reshape(shape),
+                 model=(names[0] if names.size else fallback) if one_name or not shape else names.reshape(shape),
                  flags=flags.reshape(shape) if shape else core.Flag(int(flags[0])), status=shaped(status))

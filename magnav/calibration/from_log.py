@@ -72,12 +72,14 @@ def _judged(fit, mag, acc, gyr, field_uT, dip_deg, field, about):
 def _reasons(fit, noise, by_cells, predicted, field_uT, dip_deg):
     """Why the fit is refused; empty where it is not."""
     reasons = []
-    by_patch = j.worst_heading_sigma_deg(by_cells, fit.soft_iron, field_uT, dip_deg)
-    if not by_patch <= j.LARGEST_HEADING_SIGMA_DEG:
-        reasons.append(f"the motion covers too little of the sphere: {j.undetermined(by_cells, field_uT)}")
-    elif not predicted <= j.LARGEST_HEADING_SIGMA_DEG:
-        reasons.append(f"headings would be uncertain by {predicted:.1f} deg (1 sigma; accepted: "
-                       f"{j.LARGEST_HEADING_SIGMA_DEG:g}): record longer, in a quieter field")
+    heading = max(predicted, j.worst_heading_sigma_deg(by_cells, fit.soft_iron, field_uT, dip_deg))
+    if not heading <= j.LARGEST_HEADING_SIGMA_DEG:
+        weakest, words = j.weakest(by_cells, field_uT)
+        if weakest > j.WEAK * field_uT:
+            reasons.append(f"the motion covers too little of the sphere: {words}")
+        else:
+            reasons.append(f"headings would be uncertain by {heading:.1f} deg (1 sigma; accepted: "
+                           f"{j.LARGEST_HEADING_SIGMA_DEG:g}): the noise is too large for the horizontal field here")
     values = np.linalg.eigvalsh(fit.soft_iron)
     if not 0 < values[-1] <= j.LARGEST_CONDITION * values[0]:
         reasons.append("the soft iron found is not plausible (one axis stretched more than "
