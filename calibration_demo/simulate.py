@@ -78,7 +78,7 @@ def simulate(seed=20260512):
                       turned[:, 1, 0] - turned[:, 0, 1]], -1) / (2 * step)
 
     field = magnav.load_model("WMM2025").field(**PLACE, when=DATE)
-    earth_uT = (np.array([field.north_nT, field.east_nT, field.down_nT]) + CRUST_NT) / 1000
+    earth_uT = (field.vector_nT() + CRUST_NT) / 1000
     mag = np.einsum("nij,j->ni", ned_to_body, earth_uT) @ SOFT_IRON_DISTORTION.T + HARD_IRON_UT
     mag += MAG_NOISE_UT * rng.normal(size=mag.shape)
 

@@ -11,7 +11,7 @@ _HOME = {
     "calibrate": "calibration", "Calibration": "calibration",
     "compute_heading": "heading", "Headings": "heading",
     "convert_bearing": "bearings", "Bearing": "bearings",
-    "grid_convergence": "grid_north", "read_log": "logs",
+    "body_to_frd": "frames", "local_to_ned": "frames", "grid_convergence": "grid_north", "read_log": "logs",
     "Flag": "core", "flag_text": "core",
     "MagnavError": "errors", "InputError": "errors", "OutOfValidityError": "errors", "CoefficientFileError": "errors",
     "LogFileError": "errors", "CalibrationRefused": "errors",

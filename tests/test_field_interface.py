@@ -171,7 +171,7 @@ def test_unusable_arguments(wmm, arguments, message):
 
 
 def test_when_must_be_said(wmm):
-    with pytest.raises(TypeError, match="when"):
+    with pytest.raises(InputError, match="when is needed"):
         wmm.field(50.0, 15.0)
 
 

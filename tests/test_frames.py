@@ -4,6 +4,7 @@ import numpy as np
 import pytest
 from scipy.spatial.transform import Rotation
 
+import magnav
 from magnav.errors import InputError
 from magnav.frames import body_to_frd, calibration_to_frd, local_to_ned, to_specific_force
 
@@ -21,6 +22,14 @@ def test_enu_to_ned_swaps_east_and_north_and_turns_up_to_down():
     assert np.array_equal(local_to_ned([1.0, 2.0, 3.0], "NED"), [1.0, 2.0, 3.0])
     # a proper rotation: handedness is kept
     assert np.linalg.det(local_to_ned(np.eye(3), "ENU")) == pytest.approx(1.0)
+
+
+def test_the_fields_vector_in_either_frame():
+    field = magnav.load_model("WMM2025").field([10.0, 20.0], 30.0, when=2026)
+    assert np.array_equal(field.vector_nT(), np.stack([field.north_nT, field.east_nT, field.down_nT], -1))
+    assert np.array_equal(field.vector_nT("enu"), np.stack([field.east_nT, field.north_nT, -field.down_nT], -1))
+    with pytest.raises(InputError, match="accepted: NED, ENU"):
+        field.vector_nT("FRD")
 
 
 def test_acceleration_sense():

@@ -8,7 +8,7 @@ import sys
 from ..errors import InputError
 from ..field.dates import decimal_year
 from ..tables import Table
-from .main import EXIT_BAD_ROWS, EXIT_DONE
+from . import exits
 from .say import Progress, side_file_of, write_bad_rows
 
 PLACE_COLUMNS = ("lat_deg", "lon_deg", "height_m", "date")
@@ -49,7 +49,7 @@ def run_bulk(options, needed, results_of, result_names):
     progress.end()
     bad.sort(key=lambda row: row[0])
     write_bad_rows(bad, side_file_of(options.output or options.input))
-    return EXIT_BAD_ROWS if bad else EXIT_DONE
+    return exits.BAD_ROWS if bad else exits.DONE
 
 
 def _dated(rows, options, cache, bad):

@@ -1,7 +1,7 @@
 """`magnav calibrate`: hard and soft iron from a log, with a verdict."""
 
 from ..errors import InputError
-from .main import EXIT_BAD_ROWS, EXIT_DONE, EXIT_REFUSED
+from . import exits
 from .place import add_place, add_subparser, field_of
 from .say import Progress, place_text, print_caution, print_warnings, side_file_of, write_bad_rows
 
@@ -71,8 +71,8 @@ def run(options):
             print(f"\nWritten to {options.output}")
         print_caution()
     if calibration.verdict == "refused":
-        return EXIT_REFUSED
-    return EXIT_BAD_ROWS if log.bad else EXIT_DONE
+        return exits.REFUSED
+    return exits.BAD_ROWS if log.bad else exits.DONE
 
 
 def describe(calibration, field, log):

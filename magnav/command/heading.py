@@ -4,8 +4,8 @@ import csv
 
 import numpy as np
 
+from . import exits
 from .calibrate import add_log, calibrate_log, describe, read_log_of
-from .main import EXIT_BAD_ROWS, EXIT_DONE
 from .place import add_grid, add_place, add_subparser, field_of
 from .say import east_west, place_text, plain, print_caution, print_json, print_warnings, side_file_of, write_bad_rows
 
@@ -61,7 +61,7 @@ def run(options):
         if options.output:
             print(f"\nAll {int(np.sum(headings.status == 0))} headings are in {options.output}")
         print_caution()
-    return EXIT_BAD_ROWS if bad else EXIT_DONE
+    return exits.BAD_ROWS if bad else exits.DONE
 
 
 def _bad_samples(headings, log):

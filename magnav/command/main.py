@@ -6,16 +6,7 @@ import sys
 
 from ..caution import CAUTION
 from ..errors import CalibrationRefused, CoefficientFileError, LogFileError, MagnavError
-
-EXIT_DONE, EXIT_ARGUMENTS, EXIT_FILE, EXIT_REFUSED, EXIT_BAD_ROWS = 0, 2, 3, 4, 5
-
-EXIT_CODES = """exit codes:
-  0  done
-  2  an argument or a value is wrong
-  3  a file cannot be read or trusted
-  4  the calibration is refused
-  5  done, but some rows were bad: good rows went through, bad ones are listed in the side file
-"""
+from . import exits
 
 
 def build_parser():
@@ -25,7 +16,7 @@ def build_parser():
     parser = argparse.ArgumentParser(
         prog="magnav", formatter_class=argparse.RawDescriptionHelpFormatter,
         description="Directions from true and grid north, with an honest uncertainty, from a magnetic sensor or a "
-                    "compass bearing.", epilog=f"{EXIT_CODES}\n{CAUTION}")
+                    "compass bearing.", epilog=f"{exits.MEANING}\n{CAUTION}")
     parser.add_argument("--version", action="version", version=_version())
     commands = parser.add_subparsers(dest="command", metavar="COMMAND", required=True)
     for module in (field, calibrate, heading, bearing):
@@ -48,12 +39,12 @@ def main(arguments=None):
     except BrokenPipeError:
         # whoever read our output has gone; leave quietly, and keep Python from complaining at its own end
         os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
-        return EXIT_DONE
+        return exits.DONE
     except MagnavError as error:
         print(f"magnav {options.command}: {error}", file=sys.stderr)
         if isinstance(error, CalibrationRefused):
-            return EXIT_REFUSED
-        return EXIT_FILE if isinstance(error, (LogFileError, CoefficientFileError)) else EXIT_ARGUMENTS
+            return exits.REFUSED
+        return exits.FILE if isinstance(error, (LogFileError, CoefficientFileError)) else exits.ARGUMENTS
     except OSError as error:
         print(f"magnav {options.command}: {error.filename or 'file'}: {error.strerror}", file=sys.stderr)
-        return EXIT_FILE
+        return exits.FILE

@@ -34,11 +34,11 @@ class Model:
         """The models in use, and for each date the place of its own among them."""
         return [self], np.zeros(np.shape(year), dtype=np.intp)
 
-    def field(self, lat_deg, lon_deg, height_m=0.0, *, when, extrapolate=False, bad="raise"):
+    def field(self, lat_deg, lon_deg, height_m=0.0, when=None, *, extrapolate=False, bad="raise"):
         """The field and its yearly change at geodetic WGS84 points; arguments broadcast, scalars give scalars.
 
         lat_deg -90 to 90, lon_deg -360 to 360, height_m above the ellipsoid -10,000 to 10,000,000.
-        when: see `magnav.field.dates.decimal_year`; its shape broadcasts with the rest.
+        when: needed; see `magnav.field.dates.decimal_year` for what is accepted; its shape broadcasts with the rest.
         extrapolate: compute outside the model's validity, with the flag OUTSIDE_VALIDITY and a growing sigma.
         bad: "raise" stops at the first bad point; "nan" gives NaN there and says why in `status`. A masked element
         counts as NaN. A date that cannot be read at all is an error either way.
@@ -65,7 +65,7 @@ class AutoModel:
         """The models in use, and for each date the place of its own among them; outside all, the nearest."""
         return self._models, np.minimum(np.searchsorted(self._until_yr, year, side="right"), len(self._models) - 1)
 
-    def field(self, lat_deg, lon_deg, height_m=0.0, *, when, extrapolate=False, bad="raise"):
+    def field(self, lat_deg, lon_deg, height_m=0.0, when=None, *, extrapolate=False, bad="raise"):
         """As `Model.field`; `model` in the result names the model each point was computed with."""
         return _field(self, lat_deg, lon_deg, height_m, when, extrapolate, bad)
 
@@ -82,6 +82,8 @@ def _real(name, value):
 
 
 def _field(chooser, lat_deg, lon_deg, height_m, when, extrapolate, bad):
+    if when is None:
+        raise InputError("when is needed: the date for which the field is wanted")
     if bad not in ("raise", "nan"):
         raise InputError(f'bad={bad!r}: accepted are "raise" and "nan"')
     inputs = [_real("lat_deg", lat_deg), _real("lon_deg", lon_deg), _real("height_m", height_m),

@@ -5,6 +5,7 @@ import dataclasses
 import numpy as np
 
 from ..core import Flag, flag_text, flags_in
+from ..frames import local_to_ned
 from ..uncertainty.model_error import Sigma
 
 
@@ -49,6 +50,10 @@ class Field:
     def warnings(self):
         """One line of text for each flag that is up anywhere, in bit order."""
         return [flag_text(flag) for flag in flags_in(self.flags)]
+
+    def vector_nT(self, local="NED"):
+        """The field as vectors (..., 3) in the local frame named: "NED" or "ENU" (east, north, up)."""
+        return local_to_ned(np.stack([self.north_nT, self.east_nT, self.down_nT], axis=-1), local)
 
     def as_dict(self):
         """Plain dict for JSON: attribute names as keys, arrays as lists, NaN as None, flags as lists of names."""
