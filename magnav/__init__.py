@@ -5,6 +5,8 @@ Never the only means of safety-critical navigation: charts, notices, local codes
 
 import importlib
 
+__version__ = "0.1.0"
+
 # each name and where it lives: loaded when first used, so that the command starts fast
 _HOME = {
     "load_model": "field.catalogue", "model_names": "field.catalogue", "Field": "field.result", "Model": "field.model",

@@ -6,7 +6,6 @@ Convergence is the azimuth of grid north from true north, east positive: grid be
 import functools
 
 import numpy as np
-import pyproj
 
 from .errors import InputError
 
@@ -62,6 +61,8 @@ def utm_epsg(lat_deg, lon_deg):
 
 @functools.lru_cache(maxsize=256)
 def _projection_of(key):
+    import pyproj  # here, so that what needs no grid starts without it
+
     try:
         crs = pyproj.CRS.from_user_input(key)
     except pyproj.exceptions.CRSError as error:
@@ -80,7 +81,10 @@ def _projection_of(key):
 
 
 def _projection(crs):
-    return _projection_of(crs if isinstance(crs, (str, int)) else pyproj.CRS.from_user_input(crs).to_wkt())
+    if not isinstance(crs, (str, int)) and not hasattr(crs, "to_wkt"):
+        raise InputError(f"crs {crs!r} is of type {type(crs).__name__}; accepted: an EPSG code, PROJ string, WKT or "
+                         "pyproj CRS of a projected system, utm, ups")
+    return _projection_of(crs if isinstance(crs, (str, int)) else crs.to_wkt())
 
 
 def _convergence(crs, lat, lon):

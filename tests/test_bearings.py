@@ -41,6 +41,10 @@ def test_the_models_sigma_enters_only_between_magnetic_and_the_others():
 
     assert sigma("true", "grid") == sigma("magnetic", "magnetic") == 0.3
     assert sigma("magnetic", "true") == sigma("grid", "magnetic") == np.hypot(0.3, field.sigma.declination_deg)
+    for own, larger in ((0.3, "model"), (3.0, "reading")):
+        bearing = magnav.convert_bearing(10.0, "magnetic", "true", field=field, sigma_deg=own)
+        assert bearing.contribution_deg == {"reading": own, "model": field.sigma.declination_deg}
+        assert bearing.dominant == larger
 
 
 def test_interval_wraps_and_vanishes():

@@ -19,7 +19,8 @@ class Bearing:
     """Directions clockwise from each north in [0, 360), floats or arrays; grid_deg NaN without a grid.
 
     `bearing_deg` is the one asked for, `sigma_deg` its standard uncertainty, `low_95_deg` and `high_95_deg` the ends of
-    its 95 % interval (NaN where it covers the circle).
+    its 95 % interval (NaN where it covers the circle). `contribution_deg` holds the parts of `sigma_deg` by name
+    (reading: the bearing's own; model: the declination's) and `dominant` the name of the larger.
     """
 
     bearing_deg: object
@@ -32,6 +33,8 @@ class Bearing:
     declination_deg: object
     convergence_deg: object
     grid: object
+    contribution_deg: dict
+    dominant: object
 
 
 def convert_bearing(bearing_deg, from_north, to_north, *, field, crs=None, sigma_deg=0.0, bad="raise"):
@@ -66,8 +69,11 @@ def convert_bearing(bearing_deg, from_north, to_north, *, field, crs=None, sigma
     # a tiny negative angle rounds up to the full circle
     every = {name: np.where(value == 360.0, 0.0, value)[()] for name, value in every.items()}
     crosses = (from_north == "magnetic") != (to_north == "magnetic")
-    sigma = np.hypot(own_sigma, field.sigma.declination_deg if crosses else 0.0)
-    sigma = np.broadcast_to(sigma, np.shape(every[to_north]))[()]
+    shape = np.shape(every[to_north])
+    parts = {"reading": own_sigma, "model": field.sigma.declination_deg if crosses else 0.0}
+    parts = {name: np.broadcast_to(part, shape)[()] for name, part in parts.items()}
+    sigma = np.hypot(parts["reading"], parts["model"])
+    dominant = np.where(parts["model"] > parts["reading"], "model", "reading")
     low, high = interval_95(every[to_north], sigma)
     return Bearing(every[to_north], sigma, low, high, every["magnetic"], every["true"], every["grid"],
-                   field.declination_deg, convergence, grid)
+                   field.declination_deg, convergence, grid, parts, dominant if shape else str(dominant))

@@ -43,7 +43,9 @@ def run(options):
     print(f"At {place_text(field)}\n")
     print(f"  {options.from_north + ' bearing':18}{options.bearing:9.2f} deg")
     print(f"  {options.to_north + ' bearing':18}{bearing.bearing_deg:9.2f} deg   +/- {1.96 * bearing.sigma_deg:.2f} "
-          f"(95 %): {_interval(bearing)}\n")
+          f"(95 %): {_interval(bearing)}")
+    parts = ", ".join(f"{name} {part:.2f}" for name, part in bearing.contribution_deg.items())
+    print(f"  standard uncertainty {bearing.sigma_deg:.2f} deg: {parts}\n")
     print(f"  declination {east_west(field.declination_deg)}, changing "
           f"{field.declination_deg_per_yr:+.2f} deg a year")
     if bearing.grid:

@@ -4,6 +4,7 @@ import argparse
 import os
 import sys
 
+from .. import __version__
 from ..caution import CAUTION
 from ..errors import CalibrationRefused, CoefficientFileError, LogFileError, MagnavError
 from . import exits
@@ -17,17 +18,11 @@ def build_parser():
         prog="magnav", formatter_class=argparse.RawDescriptionHelpFormatter,
         description="Directions from true and grid north, with an honest uncertainty, from a magnetic sensor or a "
                     "compass bearing.", epilog=f"{exits.MEANING}\n{CAUTION}")
-    parser.add_argument("--version", action="version", version=_version())
+    parser.add_argument("--version", action="version", version=f"magnav {__version__}")
     commands = parser.add_subparsers(dest="command", metavar="COMMAND", required=True)
     for module in (field, calibrate, heading, bearing):
         module.add_parser(commands)
     return parser
-
-
-def _version():
-    from importlib.metadata import version
-
-    return f"magnav {version('magnav')}"
 
 
 def main(arguments=None):
