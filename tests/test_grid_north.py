@@ -92,7 +92,8 @@ def test_utm_exceptions_of_norway_and_svalbard():
 
 
 @pytest.mark.parametrize(("crs", "lat", "lon", "words"), [
-    (3.5, 10, 10, "of type float"), ("EPSG:4326", 10, 10, "not a projected"), ("nowhere", 10, 10, "not known"), ("utm", 85, 0, "use ups"),
+    (3.5, 10, 10, "of type float"), ("EPSG:4326", 10, 10, "not a projected"),
+    ("nowhere", 10, 10, "not known"), ("utm", 85, 0, "use ups"),
     ("EPSG:32633", 0, 120, "not defined at lat 0, lon 120"), ("EPSG:32633", float("nan"), 15, "not defined")])
 def test_what_cannot_be_is_refused(crs, lat, lon, words):
     with pytest.raises(InputError, match=words):
