@@ -5,8 +5,10 @@ import re
 
 from setuptools.command.build_ext import build_ext
 
-MODULE = "magnav.core._core"
-HEADER = pathlib.Path("c_core/include/magnav_core.h")
+INCLUDE, SOURCE = pathlib.Path("c_core/include"), pathlib.Path("c_core/src")
+# the core's own header first: the others build on its types
+HEADERS = [INCLUDE / "magnav_core.h",
+           *sorted(path for path in INCLUDE.glob("magnav_*.h") if path.stem not in ("magnav_core", "magnav_config"))]
 
 # what the header says with the preprocessor, which cffi does not read
 MACROS = """
@@ -17,9 +19,9 @@ size_t MAGNAV_SNAPSHOT_REALS(int32_t degree);
 """
 
 
-def declarations(header_text):
-    """The types and functions of the header, without preprocessor lines and the C++ guard."""
-    text = re.sub(r"/\*.*?\*/", "", header_text, flags=re.S)
+def declarations(header_texts):
+    """The types and functions of the headers, without preprocessor lines and the C++ guard."""
+    text = re.sub(r"/\*.*?\*/", "", "\n".join(header_texts), flags=re.S)
     text = re.sub(r"#ifdef __cplusplus.*?#endif", "", text, flags=re.S)
     text = re.sub(r"^#.*(?:\\\n.*)*$", "", text, flags=re.M)
     return MACROS + text
@@ -33,11 +35,12 @@ class BuildCore(build_ext):
         from cffi import recompiler
 
         ffi = cffi.FFI()
-        ffi.cdef(declarations(HEADER.read_text(encoding="utf-8")))
+        ffi.cdef(declarations([header.read_text(encoding="utf-8") for header in HEADERS]))
         face = pathlib.Path(self.build_temp) / "core_face.c"
         face.parent.mkdir(parents=True, exist_ok=True)
-        recompiler.make_c_source(ffi, ext.name, '#include "magnav_core.h"', str(face))
-        ext.sources = [*ext.sources, str(face)]
+        recompiler.make_c_source(ffi, ext.name, "".join(f'#include "{header.name}"\n' for header in HEADERS), str(face))
+        ext.depends = [*map(str, HEADERS), *map(str, SOURCE.glob("*.h"))]
+        ext.sources = [*sorted(map(str, SOURCE.glob("*.c"))), str(face)]
         msvc = self.compiler.compiler_type == "msvc"
         ext.extra_compile_args = ["/fp:precise"] if msvc else ["-std=c99", "-ffp-contract=off", "-fno-math-errno"]
         super().build_extension(ext)
