@@ -32,6 +32,8 @@ extern "C" {
 
 /* Raised when the meaning of a call or the layout of a structure changes. */
 #define MAGNAV_CORE_VERSION 1
+/* The release, as every package of the core is numbered. */
+#define MAGNAV_CORE_RELEASE "0.1.0"
 
 typedef enum magnav_status {
     MAGNAV_OK = 0,

@@ -64,5 +64,6 @@ void test_heading_flags(void);
 void test_heading_statuses(void);
 void test_vertical(void);
 void test_log(void);
+void test_image(void);
 
 #endif

@@ -121,6 +121,7 @@ int main(void)
     test_heading_statuses();
     test_vertical();
     test_log();
+    test_image();
     printf("%ld passed, %ld failed\n", passed, failed);
     return failed != 0;
 }

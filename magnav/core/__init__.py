@@ -93,6 +93,12 @@ def heading_log(setup, t_s, mag_uT, acc_mps2=None, gyr_radps=None):
     return out, status
 
 
+def image_is_sound(content):
+    """Whether bytes are the undamaged binary image of a model that this build can evaluate."""
+    status = lib.magnav_image_open(_pointer(content, "uint8_t[]"), len(content), ffi.new("magnav_image *"))
+    return status == lib.MAGNAV_OK
+
+
 def sincos_deg(x_deg):
     """The core's own sine and cosine of one angle in degrees."""
     both = ffi.new("double[2]")

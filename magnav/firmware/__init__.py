@@ -1,0 +1,1 @@
+"""What goes onto a target: images and patches of a model, vectors to check it with."""
