@@ -65,5 +65,6 @@ void test_heading_statuses(void);
 void test_vertical(void);
 void test_log(void);
 void test_image(void);
+void test_calibrator(void);
 
 #endif

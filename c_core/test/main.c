@@ -122,6 +122,7 @@ int main(void)
     test_vertical();
     test_log();
     test_image();
+    test_calibrator();
     printf("%ld passed, %ld failed\n", passed, failed);
     return failed != 0;
 }

@@ -93,6 +93,22 @@ def heading_log(setup, t_s, mag_uT, acc_mps2=None, gyr_radps=None):
     return out, status
 
 
+def calibrator_solution(mag_uT, field_uT):
+    """What the target's calibrator makes of readings (n, 3): a dict with hard_iron_uT (3,), soft_iron (3, 3), covariance
+    (9, 9), noise_uT, seen and refusal (a magnav_refusal of the core)."""
+    calibrator, result = ffi.new("magnav_calibrator *"), ffi.new("magnav_calibrator_result *")
+    _raise_for(lib.magnav_calibrator_start(calibrator, field_uT))
+    for reading in np.ascontiguousarray(mag_uT, dtype=np.float64):
+        _raise_for(lib.magnav_calibrator_add(calibrator, _pointer(reading, "double[]")))
+    _raise_for(lib.magnav_calibrator_solve(calibrator, result))
+    covariance = np.zeros((9, 9))
+    covariance[np.tril_indices(9)] = list(result.calibration.covariance)
+    covariance += np.tril(covariance, -1).T
+    return {"hard_iron_uT": np.array(list(result.calibration.hard_iron_uT)),
+            "soft_iron": np.array(list(result.calibration.soft_iron)).reshape(3, 3), "covariance": covariance,
+            "noise_uT": result.noise_uT, "seen": result.seen, "refusal": result.refusal}
+
+
 def image_is_sound(content):
     """Whether bytes are the undamaged binary image of a model that this build can evaluate."""
     status = lib.magnav_image_open(_pointer(content, "uint8_t[]"), len(content), ffi.new("magnav_image *"))

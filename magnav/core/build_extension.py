@@ -13,18 +13,18 @@ HEADERS = [INCLUDE / "magnav_core.h",
 # what the header says with the preprocessor, which cffi does not read
 MACROS = """
 typedef double magnav_real;
-#define MAGNAV_FLAG_COUNT ...
 static const double MAGNAV_GRID_VARIATION_LATITUDE_DEG;
 size_t MAGNAV_SNAPSHOT_REALS(int32_t degree);
 """
 
 
 def declarations(header_texts):
-    """The types and functions of the headers, without preprocessor lines and the C++ guard."""
+    """The types, functions and whole-number macros of the headers, without other preprocessor lines."""
     text = re.sub(r"/\*.*?\*/", "", "\n".join(header_texts), flags=re.S)
+    numbers = re.findall(r"^#define \w+ \d+[ ]*$", text, flags=re.M)
     text = re.sub(r"#ifdef __cplusplus.*?#endif", "", text, flags=re.S)
     text = re.sub(r"^#.*(?:\\\n.*)*$", "", text, flags=re.M)
-    return MACROS + text
+    return "\n".join([MACROS, *numbers, text])
 
 
 class BuildCore(build_ext):
