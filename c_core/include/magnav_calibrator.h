@@ -5,7 +5,8 @@
  * kept and updated by Givens rotations (Golub and Van Loan, Matrix Computations, 4th ed., 6.5.3): half the digits that
  * normal equations would cost, which is what lets it run in float. Hard and soft iron follow from the ellipsoid, their
  * covariance from the factor. The desk's maximum-likelihood fit weights readings a little otherwise: the two agree to a
- * fraction of their standard uncertainty.
+ * fraction of their standard uncertainty, unless a disturbance throws readings far off the ellipsoid: here those weigh
+ * by the square.
  *
  * COVERAGE. In 26 directions (the faces, edges and corners of a cube) the farthest reading is kept; a direction counts
  * as seen when a reading lies within some 37 degrees of it. */

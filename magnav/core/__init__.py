@@ -94,8 +94,8 @@ def heading_log(setup, t_s, mag_uT, acc_mps2=None, gyr_radps=None):
 
 
 def calibrator_solution(mag_uT, field_uT):
-    """What the target's calibrator makes of readings (n, 3): a dict with hard_iron_uT (3,), soft_iron (3, 3), covariance
-    (9, 9), noise_uT, seen and refusal (a magnav_refusal of the core)."""
+    """What the target's calibrator makes of readings (n, 3): a dict with hard_iron_uT (3,), soft_iron (3, 3),
+    covariance (9, 9), noise_uT, seen and refusal (a magnav_refusal of the core)."""
     calibrator, result = ffi.new("magnav_calibrator *"), ffi.new("magnav_calibrator_result *")
     _raise_for(lib.magnav_calibrator_start(calibrator, field_uT))
     for reading in np.ascontiguousarray(mag_uT, dtype=np.float64):
