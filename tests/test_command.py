@@ -155,6 +155,14 @@ def test_bad_rows_of_a_log(capsys, tmp_path):
     assert code == 5 and [row["line"] for row in json.loads(out)["bad_rows"]] == [11, 21]
 
 
+def test_bad_rows_are_said_where_no_side_file_can_be_written(capsys, tmp_path):
+    log = tmp_path / "log.csv"
+    log.write_text("mag_x_uT,mag_y_uT,mag_z_uT\n20,1,43\nx,1,43\n20,1\n", encoding="utf-8")
+    (tmp_path / "log.csv.bad.csv").mkdir()
+    code, _, err = run(capsys, "heading", log, *DEMO_PLACE)
+    assert code == 5 and "cannot be written" in err and "  line 3: " in err and "  line 4: " in err
+
+
 @pytest.mark.parametrize(("arguments", "code", "words"), [
     (["field", "--lat", "1"], 2, "--lon is needed"), (["field", "--lat", "95", "--lon", "1"], 2, "latitude outside"),
     (["field", "--lat", "1", "--lon", "1", "--date", "1500"], 2, "outside the validity"),

@@ -72,9 +72,16 @@ def write_bad_rows(bad, path):
     """List the bad rows (line, reason, text) in a side file and say so on stderr; nothing where there are none."""
     if not bad:
         return
-    with open(path, "w", encoding="utf-8", newline="") as file:
-        writer = csv.writer(file, lineterminator="\n")
-        writer.writerow(["line", "reason", "row"])
-        writer.writerows(bad)
     line, reason, _ = bad[0]
-    print(f"{len(bad)} bad row(s), the first in line {line}: {reason}; all are listed in {path}", file=sys.stderr)
+    said = f"{len(bad)} bad row(s), the first in line {line}: {reason}"
+    try:
+        with open(path, "w", encoding="utf-8", newline="") as file:
+            writer = csv.writer(file, lineterminator="\n")
+            writer.writerow(["line", "reason", "row"])
+            writer.writerows(bad)
+        print(f"{said}; all are listed in {path}", file=sys.stderr)
+    except OSError as error:
+        # beside a log that may only be read: none may be lost for that
+        print(f"{said}; {path} cannot be written ({error.strerror}), so all of them here:", file=sys.stderr)
+        for line, reason, _ in bad:
+            print(f"  line {line}: {reason}", file=sys.stderr)
