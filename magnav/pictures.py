@@ -71,3 +71,22 @@ def heading_error_picture(t_s, errors, path, title="Heading error against the tr
     figure.suptitle(title)
     figure.savefig(path, dpi=120)
     plt.close(figure)
+
+
+def deviation_picture(curve, compass_deg, magnetic_deg, path):
+    """A deviation curve with its 95 % band and the readings it was fitted to."""
+    plt = _plt()
+    figure, axis = plt.subplots(figsize=(9, 4.5), layout="constrained")
+    around = np.arange(0.0, 360.5, 1.0)
+    value, wide = curve.deviation_deg(around), 1.96 * curve.deviation_sigma_deg(around)
+    axis.fill_between(around, value - wide, value + wide, color=BAND, lw=0, label="95 % of the curve")
+    axis.plot(around, value, color=AFTER, label="deviation")
+    found = np.mod(magnetic_deg - compass_deg + 180.0, 360.0) - 180.0
+    axis.plot(np.mod(compass_deg, 360.0), found, "o", ms=4, color=BEFORE, label="readings")
+    axis.axhline(0, lw=0.5, color=REFERENCE)
+    axis.set(xlim=(0, 360), xticks=range(0, 361, 45), xlabel="compass heading, deg", ylabel="deviation, deg (east +)")
+    axis.set_title("   ".join(f"{name} {value:+.2f}" for name, (value, _) in curve.named.items()))
+    axis.grid(lw=0.3)
+    axis.legend(fontsize=8)
+    figure.savefig(path, dpi=120)
+    plt.close(figure)

@@ -180,6 +180,29 @@ def test_exit_codes_and_messages(capsys, arguments, code, words):
     assert found == code and words in err and err.startswith(f"magnav {arguments[0]}: ")
 
 
+def test_deviation(capsys, tmp_path):
+    """Handbook of Magnetic Compass Adjustment (formerly Pub. 226), chapter V: the eight deviations of its example."""
+    deviations = dict(zip(range(0, 360, 45), (10.5, 20.0, 11.5, -1.2, -5.5, -8.0, -12.5, -6.8), strict=True))
+    table, picture = tmp_path / "swing.csv", tmp_path / "curve.png"
+    rows = [f"{compass},{(compass + d) % 360},{way}" for compass, d in deviations.items() for way in ("cw", "ccw")]
+    table.write_text("compass_deg,reference_deg,sense\n" + "\n".join(rows) + "\n1,2,up\n", encoding="utf-8")
+    code, out, err = run(capsys, "deviation", table, "--picture", picture)
+    assert code == 5 and "column sense: 'up'" in err and "Deviation card" in out and CAUTION in out
+    assert picture.stat().st_size > 10_000
+    code, out, _ = run(capsys, "deviation", table, "--json", "--limit-deg", 30, "--hysteresis-limit-deg", 1)
+    answer = json.loads(out)
+    assert code == 5 and [check["passed"] for check in answer["checks"]] == [True, True]
+    assert answer["coefficients_deg"]["B"] == pytest.approx(12.0, abs=0.15) and len(answer["card"]) == 24
+    code, out, _ = run(capsys, "deviation", table, "--limit-deg", 15, "--residual-limit-deg", 1)
+    assert code == 6 and "FAIL  largest deviation" in out and "pass  scatter" in out
+    code, out, _ = run(capsys, "deviation", table, "--reference", "true", "--json", *DEMO_PLACE)
+    shift = answer["coefficients_deg"]["A"] - json.loads(out)["coefficients_deg"]["A"]
+    assert shift == pytest.approx(magnav.load_model("WMM2025").field(46.62, 12.91, 640, "2026-05-12").declination_deg)
+    table.write_text("compass_deg,reference_deg\n" + "\n".join(r.rpartition(",")[0] for r in rows), encoding="utf-8")
+    code, _, err = run(capsys, "deviation", table, "--hysteresis-limit-deg", 1)
+    assert code == 2 and "needs a column sense" in err
+
+
 def test_help_says_the_caution_and_the_exit_codes(capsys):
     with pytest.raises(SystemExit) as stop:
         main(["--help"])
