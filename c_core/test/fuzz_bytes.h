@@ -2,7 +2,9 @@
  *
  * fuzz_angles.c   magnav_sincos_deg, magnav_atan2_deg, magnav_full_circle_deg
  * fuzz_field.c    magnav_snapshot_at, magnav_field_at, magnav_vector_at, magnav_elements, magnav_field_many
- * fuzz_heading.c  magnav_heading_of, magnav_vertical_step, magnav_heading_log, the words */
+ * fuzz_heading.c  magnav_heading_of, magnav_vertical_step, magnav_heading_log, the words
+ * fuzz_image.c    magnav_image_open, magnav_image_snapshot, magnav_crc32
+ * fuzz_calibrator.c  magnav_calibrator_start, _add, _solve */
 #ifndef FUZZ_BYTES_H
 #define FUZZ_BYTES_H
 
