@@ -1,7 +1,7 @@
 /* The field vector at a point, from a snapshot: spherical harmonic synthesis without a special case at the poles.
  *
  * With s, c the sine and cosine of the colatitude, rho = a / r and column sums over the degrees n of one order m
- *   S = sum g q,  T = sum (n+1) g q,  U = sum (n-m) g q',   q' the polynomial of order m+1 (the derivative of q),
+ *   S = sum g q,  T = sum (n+1) g q,  U = sum g p,   p the derivative of q by rho c, carried along by its own recursion,
  * the components are (Langel, in Jacobs (ed.), Geomagnetism vol. 1, 1987, sec. 3, differentiated term by term)
  *   north  rho^2 sum_m  m c rho (rho s)^(m-1) (C S_g + D S_h) - (rho s)^(m+1) (C U_g + D U_h)
  *   east   rho^2 sum_m  m   rho (rho s)^(m-1) (D S_g - C S_h)
@@ -57,116 +57,111 @@ static magnav_status locate(magnav_real lat_deg, magnav_real lon_deg, magnav_rea
     return MAGNAV_OK;
 }
 
-/* Column sums of one order for one set of coefficients; u belongs to the order before. */
+/* Sums over the degrees of one order, and what one order adds to the vector. */
 typedef struct column_sums {
     magnav_real sg, sh, tg, th, ug, uh;
 } column_sums;
 
-static inline void add_term(column_sums *sums, const magnav_real gh[2], magnav_real q, magnav_real weighted)
+static void add_order(magnav_real ned[3], const column_sums *sums, const position *at, magnav_real m,
+                      magnav_real rho_s, const magnav_real e[2])
 {
-    sums->sg = sums->sg + gh[0] * q;
-    sums->sh = sums->sh + gh[1] * q;
-    sums->tg = sums->tg + gh[0] * weighted;
-    sums->th = sums->th + gh[1] * weighted;
+    /* e = (rho s)^(m-1) exp(i m lon) */
+    const magnav_real m_rho = m * at->rho;
+
+    ned[0] = ned[0] + (m_rho * at->c * (e[0] * sums->sg + e[1] * sums->sh) -
+                       rho_s * rho_s * (e[0] * sums->ug + e[1] * sums->uh));
+    ned[1] = ned[1] + m_rho * (e[1] * sums->sg - e[0] * sums->sh);
+    ned[2] = ned[2] - rho_s * (e[0] * sums->tg + e[1] * sums->th);
 }
 
-static inline void add_slope(column_sums *sums, const magnav_real gh[2], magnav_real weighted)
+/* Geocentric north, east, down to the geodetic vertical. */
+static void turn_to_vertical(const magnav_real geocentric[3], const position *at, magnav_real ned[3])
 {
-    sums->ug = sums->ug + gh[0] * weighted;
-    sums->uh = sums->uh + gh[1] * weighted;
+    const magnav_real rho2 = at->rho * at->rho;
+
+    ned[0] = rho2 * (geocentric[0] * at->cosine_psi + geocentric[2] * at->sine_psi);
+    ned[1] = rho2 * geocentric[1];
+    ned[2] = rho2 * (geocentric[2] * at->cosine_psi - geocentric[0] * at->sine_psi);
 }
 
-static inline void add_order(magnav_real ned[3], const column_sums *sums, const position *at, magnav_real m,
-                             magnav_real rho_s, const magnav_real e_now[2], const magnav_real e_before[2])
-{
-    /* e_now = (rho s)^(m-1) exp(i m lon); e_before is that of order m - 1, for the sums u */
-    const magnav_real along = e_now[0] * sums->sg + e_now[1] * sums->sh;
-    const magnav_real across = e_now[1] * sums->sg - e_now[0] * sums->sh;
-    const magnav_real slope = e_before[0] * sums->ug + e_before[1] * sums->uh;
-
-    ned[0] = ned[0] + (m * at->c * at->rho * along - rho_s * rho_s * slope);
-    ned[1] = ned[1] + m * at->rho * across;
-    ned[2] = ned[2] - rho_s * (e_now[0] * sums->tg + e_now[1] * sums->th);
-}
-
-/* Geocentric north, east, down, and with `rates` their yearly change, turned to the geodetic vertical. */
-static void synthesise(const magnav_snapshot *snapshot, const position *at, int32_t rates, magnav_real ned[3],
+/* The vector, and with `ned_rate` not NULL its yearly change. */
+static void synthesise(const magnav_snapshot *snapshot, const position *at, magnav_real ned[3],
                        magnav_real ned_rate[3])
 {
-    const int32_t degree = snapshot->degree;
+    const magnav_real zero = MAGNAV_C(0.0);
+    const magnav_real one = MAGNAV_C(1.0);
     const magnav_real rho_s = at->rho * at->s;
-    const magnav_real rho_c = at->rho * at->c;
+    const magnav_real z = at->rho * at->c;
     const magnav_real rho2 = at->rho * at->rho;
-    const magnav_real turn[2] = {rho_s * at->cosine_lon, rho_s * at->sine_lon};
-    magnav_real e_before[2] = {MAGNAV_C(0.0), MAGNAV_C(0.0)};
-    magnav_real e_now[2] = {MAGNAV_C(0.0), MAGNAV_C(0.0)};
-    const magnav_real *column = snapshot->terms; /* of order m, its first degree */
-    const magnav_real *column_before = snapshot->terms;
-    magnav_real field[3] = {MAGNAV_C(0.0), MAGNAV_C(0.0), MAGNAV_C(0.0)};
-    magnav_real rate[3] = {MAGNAV_C(0.0), MAGNAV_C(0.0), MAGNAV_C(0.0)};
+    const magnav_real *term = snapshot->terms;
+    magnav_real e[2] = {at->cosine_lon, at->sine_lon};
+    magnav_real field[3] = {zero, zero, zero};
+    magnav_real rate[3] = {zero, zero, zero};
+    magnav_real m_real = zero;
 
-    for (int32_t m = 0; m <= degree; m++) {
-        column_sums sums = {0};
-        column_sums sums_rate = {0};
-        const int32_t first = (m == 0) ? 1 : m;
-        /* order 0 starts at n = 1 with q = cos, after q = 1 at n = 0, whose coefficient is zero */
-        magnav_real q = (m == 0) ? rho_c : MAGNAV_C(1.0);
-        magnav_real q_before = (m == 0) ? MAGNAV_C(1.0) : MAGNAV_C(0.0);
-        const magnav_real *term = column;
-        /* the order before, at the same degree; order 0 has no such, and no slope either */
-        const magnav_real *term_before = column_before + ((m > 1) ? 5 : 0);
+    for (int32_t m = 0; m <= snapshot->degree; m++) {
+        /* order 0 starts at n = 1 with q = z, after q = 1 at n = 0, whose coefficient is zero */
+        magnav_real q = (m == 0) ? z : one;
+        magnav_real q_before = (m == 0) ? one : zero;
+        magnav_real p = (m == 0) ? one : zero; /* the slope of q by z */
+        magnav_real p_before = zero;
+        magnav_real n_plus_1 = (m == 0) ? MAGNAV_C(2.0) : m_real + one;
+        magnav_real sg = zero, sh = zero, tg = zero, th = zero, ug = zero, uh = zero;
+        /* the same for the yearly change */
+        magnav_real dsg = zero, dsh = zero, dtg = zero, dth = zero, dug = zero, duh = zero;
 
-        for (int32_t n = first; n <= degree; n++) {
-            const magnav_real weighted = (magnav_real)(n + 1) * q;
-            const magnav_real q_next = rho_c * q - term[0] * rho2 * q_before;
+        for (int32_t left = snapshot->degree - ((m == 0) ? 0 : m - 1); left > 0; left--) {
+            const magnav_real beta = term[0] * rho2;
+            const magnav_real weighted = n_plus_1 * q;
+            const magnav_real p_next = (q + z * p) - beta * p_before;
+            const magnav_real q_next = z * q - beta * q_before;
+            magnav_real g = term[1];
+            magnav_real h = term[2];
 
-            add_term(&sums, &term[1], q, weighted);
-            if (rates) {
-                add_term(&sums_rate, &term[3], q, weighted);
-            }
-            if (m > 0) {
-                const magnav_real slope = (magnav_real)(n - m + 1) * q;
-                add_slope(&sums, &term_before[1], slope);
-                if (rates) {
-                    add_slope(&sums_rate, &term_before[3], slope);
-                }
-                term_before += 5;
+            sg = sg + g * q;
+            sh = sh + h * q;
+            tg = tg + g * weighted;
+            th = th + h * weighted;
+            ug = ug + g * p;
+            uh = uh + h * p;
+            if (ned_rate != NULL) {
+                g = term[3];
+                h = term[4];
+                dsg = dsg + g * q;
+                dsh = dsh + h * q;
+                dtg = dtg + g * weighted;
+                dth = dth + h * weighted;
+                dug = dug + g * p;
+                duh = duh + h * p;
             }
             q_before = q;
             q = q_next;
+            p_before = p;
+            p = p_next;
+            n_plus_1 = n_plus_1 + one;
             term += 5;
         }
         if (m == 0) {
-            field[2] = field[2] - sums.tg;
-            rate[2] = rate[2] - sums_rate.tg;
+            field[0] = zero - rho_s * ug;
+            field[2] = zero - tg;
+            rate[0] = zero - rho_s * dug;
+            rate[2] = zero - dtg;
         } else {
-            if (m == 1) {
-                e_now[0] = at->cosine_lon;
-                e_now[1] = at->sine_lon;
-                /* order 0 has u weighted by (rho s)^1 alone: fold its missing power here */
-                field[0] = field[0] - rho_s * sums.ug;
-                rate[0] = rate[0] - rho_s * sums_rate.ug;
-            } else {
-                e_before[0] = e_now[0];
-                e_before[1] = e_now[1];
-                e_now[0] = e_before[0] * turn[0] - e_before[1] * turn[1];
-                e_now[1] = e_before[0] * turn[1] + e_before[1] * turn[0];
+            const magnav_real cosine = e[0];
+            const column_sums sums = {sg, sh, tg, th, ug, uh};
+            add_order(field, &sums, at, m_real, rho_s, e);
+            if (ned_rate != NULL) {
+                const column_sums change = {dsg, dsh, dtg, dth, dug, duh};
+                add_order(rate, &change, at, m_real, rho_s, e);
             }
-            add_order(field, &sums, at, (magnav_real)m, rho_s, e_now, e_before);
-            if (rates) {
-                add_order(rate, &sums_rate, at, (magnav_real)m, rho_s, e_now, e_before);
-            }
+            e[0] = rho_s * (cosine * at->cosine_lon - e[1] * at->sine_lon);
+            e[1] = rho_s * (cosine * at->sine_lon + e[1] * at->cosine_lon);
         }
-        column_before = column;
-        column = term;
+        m_real = m_real + one;
     }
-    ned[0] = rho2 * (field[0] * at->cosine_psi + field[2] * at->sine_psi);
-    ned[1] = rho2 * field[1];
-    ned[2] = rho2 * (field[2] * at->cosine_psi - field[0] * at->sine_psi);
-    if (rates) {
-        ned_rate[0] = rho2 * (rate[0] * at->cosine_psi + rate[2] * at->sine_psi);
-        ned_rate[1] = rho2 * rate[1];
-        ned_rate[2] = rho2 * (rate[2] * at->cosine_psi - rate[0] * at->sine_psi);
+    turn_to_vertical(field, at, ned);
+    if (ned_rate != NULL) {
+        turn_to_vertical(rate, at, ned_rate);
     }
 }
 
@@ -190,7 +185,7 @@ magnav_status magnav_vector_at(const magnav_snapshot *snapshot, magnav_real lat_
     if (status != MAGNAV_OK) {
         return status;
     }
-    synthesise(snapshot, &at, 0, ned, NULL);
+    synthesise(snapshot, &at, ned, NULL);
     if (!all_finite(ned, 3)) {
         return MAGNAV_E_NOT_FINITE; /* a coefficient is */
     }
@@ -215,7 +210,7 @@ magnav_status magnav_field_at(const magnav_snapshot *snapshot, magnav_real lat_d
     if (status != MAGNAV_OK) {
         return status;
     }
-    synthesise(snapshot, &at, 1, ned, rate);
+    synthesise(snapshot, &at, ned, rate);
     status = magnav_elements(ned, rate, lat_deg, lon_deg, field);
     if (status == MAGNAV_OK) {
         field->flags |= snapshot->flags | position_flags(height_m);
