@@ -203,6 +203,24 @@ def test_deviation(capsys, tmp_path):
     assert code == 2 and "needs a column sense" in err
 
 
+def test_firmware_image_and_source(capsys, tmp_path):
+    image, source = tmp_path / "wmm.img", tmp_path / "wmm.c"
+    code, out, _ = run(capsys, "firmware", "image", "--model", "WMM2025", "--output", image)
+    assert code == 0 and "1092 bytes, the same bits" in out
+    code, out, _ = run(capsys, "field", "--lat", 80, "--lon", 0, "--date", "2025.0", "--model", image, "--json")
+    assert json.loads(out)["declination_deg"] == magnav.load_model("WMM2025").field(80, 0, when=2025.0).declination_deg
+    code, out, _ = run(capsys, "firmware", "source", "--model", "igrf14", "--first-year", 2020, "--output", source)
+    assert code == 0 and "array igrf_14_image" in out and "within" in out
+    assert f"igrf_14_image[{len(source.read_text().split('0x')) - 1}]" in source.read_text()
+    code, _, err = run(capsys, "firmware", "image", "--model", "auto", "--output", image)
+    assert code == 2 and "name the model" in err
+    code, _, err = run(capsys, "firmware", "source", "--name", "9lives", "--output", source)
+    assert code == 2 and "not a name in C" in err
+    image.write_bytes(image.read_bytes()[:-1])
+    code, _, err = run(capsys, "field", "--lat", 80, "--lon", 0, "--model", image)
+    assert code == 3 and "damaged" in err
+
+
 def test_help_says_the_caution_and_the_exit_codes(capsys):
     with pytest.raises(SystemExit) as stop:
         main(["--help"])

@@ -12,7 +12,7 @@ from . import exits
 
 def build_parser():
     """The whole parser; each subcommand's module adds its own."""
-    from . import bearing, calibrate, deviation, field, heading
+    from . import bearing, calibrate, deviation, field, firmware, heading
 
     parser = argparse.ArgumentParser(
         prog="magnav", formatter_class=argparse.RawDescriptionHelpFormatter,
@@ -20,7 +20,7 @@ def build_parser():
                     "compass bearing.", epilog=f"{exits.MEANING}\n{CAUTION}")
     parser.add_argument("--version", action="version", version=f"magnav {__version__}")
     commands = parser.add_subparsers(dest="command", metavar="COMMAND", required=True)
-    for module in (field, calibrate, heading, bearing, deviation):
+    for module in (field, calibrate, heading, bearing, deviation, firmware):
         module.add_parser(commands)
     return parser
 
