@@ -52,32 +52,122 @@ class SourceStep:
         return exits.DONE
 
 
-STEPS = (ImageStep, SourceStep)
+class VectorsStep:
+    """Golden inputs and outputs."""
+
+    NAME = "vectors"
+    SUMMARY = "Golden inputs and outputs from the desk, seeded: a table, and a C header for c_core/kit/self_test.c."
+
+    @staticmethod
+    def add(parser):
+        _add_model(parser, years=False)
+        parser.add_argument("--count", type=int, default=200, metavar="N", help="vectors a group (200)")
+        parser.add_argument("--seed", type=int, default=1, metavar="N", help="(1)")
+        parser.add_argument("--output", required=True, metavar="CSV", help="where the table goes")
+        parser.add_argument("--c-header", metavar="FILE", help="where the C header goes: vectors.h for the harness")
+
+    @staticmethod
+    def run(options):
+        from ..firmware.vectors import c_header, make_vectors, write_csv
+
+        vectors = make_vectors(_model(options), options.count, options.seed)
+        write_csv(vectors, options.output)
+        if options.c_header:
+            with open(options.c_header, "w", encoding="ascii", newline="\n") as file:
+                file.write(c_header(vectors))
+        counts = ", ".join(f"{len(rows)} {group}" for group, rows in vectors.rows.items())
+        print(f"{options.output}: {counts} vectors of {vectors.model}, seed {options.seed}")
+        return exits.DONE
+
+
+class CheckStep:
+    """What a target printed, against the vectors."""
+
+    NAME = "check"
+    SUMMARY = "Hold what a target, or any implementation, printed against the vectors: pass or fail, and the worst."
+
+    @staticmethod
+    def add(parser):
+        parser.add_argument("results", metavar="CSV", help="what the target printed: id and outputs by our names")
+        parser.add_argument("--vectors", required=True, metavar="CSV", help="the table that firmware vectors wrote")
+        parser.add_argument("--class", dest="kind", default="exact", choices=("exact", "double", "float", "custom"),
+                            help="how close is close enough (exact: the same bits)")
+        parser.add_argument("--tolerance-nT", type=float, metavar="NT", help="for the class custom")
+        parser.add_argument("--tolerance-deg", type=float, metavar="DEG", help="for the class custom")
+        parser.add_argument("--json", metavar="FILE", help="the report as JSON")
+        parser.add_argument("--junit", metavar="FILE", help="the report as JUnit XML")
+
+    @staticmethod
+    def run(options):
+        from ..firmware import conformance
+        from ..firmware.vectors import read_csv
+
+        tolerance = conformance.tolerance_of(options.kind, options.tolerance_nT, options.tolerance_deg)
+        report = conformance.check_results(read_csv(options.vectors), *conformance.read_results(options.results),
+                                           tolerance)
+        for finding in report.findings:
+            print(f"  {'pass' if finding.passed else 'FAIL'}  {finding.group:8} {finding.output:24} "
+                  f"{finding.compared:6d} compared, worst {finding.worst:9.3g} of {finding.tolerance:g}"
+                  + (f", {finding.missing} missing" if finding.missing else ""))
+            if not finding.passed:
+                print(f"        {conformance.worst_text(finding)}")
+        for name in report.not_checked:
+            print(f"  not checked, no such column: {name}")
+        for fault in report.faults:
+            print(f"  FAIL  {fault}")
+        print("conforms" if report.passed else "DOES NOT CONFORM", f"(class {options.kind})")
+        if options.json:
+            _write_json(options.json, options.kind, report)
+        if options.junit:
+            pathlib.Path(options.junit).write_text(conformance.as_junit(report), encoding="utf-8")
+        return exits.DONE if report.passed else exits.FAILED
+
+
+def _write_json(path, kind, report):
+    import json
+
+    from .say import plain
+
+    findings = [plain(vars(finding)) | {"passed": finding.passed} for finding in report.findings]
+    content = {"passed": report.passed, "class": kind, "findings": findings, "not_checked": report.not_checked,
+               "faults": report.faults}
+    pathlib.Path(path).write_text(json.dumps(content, indent=2, allow_nan=False) + "\n", encoding="utf-8")
+
+
+STEPS = (ImageStep, SourceStep, VectorsStep, CheckStep)
 
 
 def add_parser(commands):
-    parser = add_subparser(commands, "firmware", None, "What goes onto a target: a model's image, as bytes or as C.")
+    parser = add_subparser(commands, "firmware", None, "What goes onto a target: a model's image, as bytes or as C; "
+                           "and the vectors that prove what the target computes.")
     # each step sets its own run
     steps = parser.add_subparsers(dest="step", metavar="STEP", required=True)
     for step in STEPS:
         step.add(add_subparser(steps, step.NAME, step.run, step.SUMMARY))
 
 
-def _add_model(parser):
+def _add_model(parser, years=True):
     parser.add_argument("--model", default="WMM2025", metavar="NAME",
                         help="a model's name or coefficient file (WMM2025)")
+    if not years:
+        return
     parser.add_argument("--first-year", type=float, metavar="YEAR", help="leave out what serves only before")
     parser.add_argument("--last-year", type=float, metavar="YEAR", help="leave out what serves only after")
 
 
-def _image(options):
+def _model(options):
     from ..field.catalogue import load_model
-    from ..firmware.image import make_image
 
     model = load_model(options.model)
     if not hasattr(model, "coefficients"):
         raise InputError("auto is a choice among models, not one: name the model that goes onto the target")
-    return make_image(model, options.first_year, options.last_year)
+    return model
+
+
+def _image(options):
+    from ..firmware.image import make_image
+
+    return make_image(_model(options), options.first_year, options.last_year)
 
 
 def _difference(image):

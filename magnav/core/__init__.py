@@ -34,6 +34,7 @@ def _dtype_of(ctype):
 
 FIELD_DTYPE = _dtype_of(ffi.typeof("magnav_field_values"))
 HEADING_DTYPE = _dtype_of(ffi.typeof("magnav_heading"))
+CORE_VERSION = lib.magnav_core_version()
 PARAMETER_STATUS = lib.MAGNAV_E_PARAMETER
 GRID_VARIATION_LATITUDE_DEG = lib.MAGNAV_GRID_VARIATION_LATITUDE_DEG
 
@@ -91,6 +92,15 @@ def heading_log(setup, t_s, mag_uT, acc_mps2=None, gyr_radps=None):
         ffi.new("magnav_heading_setup *", setup), count, _pointer(t_s, "double[]"), _pointer(mag_uT, "double[]"),
         *optional, _output(out, "magnav_heading[]"), _output(status, "int32_t[]")))
     return out, status
+
+
+def heading_of(setup, mag_uT, down, tilt_sigma_deg):
+    """One heading from a reading and a vertical, (3,) each, FRD: a record of HEADING_DTYPE and its status."""
+    out = np.zeros(1, HEADING_DTYPE)
+    status = lib.magnav_heading_of(ffi.new("magnav_heading_setup *", setup), ffi.new("double[3]", list(mag_uT)),
+                                   ffi.new("double[3]", list(down)), float(tilt_sigma_deg),
+                                   _output(out, "magnav_heading[]"))
+    return out[0], status
 
 
 def calibrator_solution(mag_uT, field_uT):
