@@ -49,7 +49,8 @@ typedef enum magnav_status {
     MAGNAV_E_ACCELERATION = -10, /* the acceleration vector is zero: no vertical */
     MAGNAV_E_MAGNETIC = -11,  /* the magnetic vector is zero or vertical: no direction */
     MAGNAV_E_PARAMETER = -12, /* a setting is out of its range (negative sigma, NaN, ...) */
-    MAGNAV_E_END = -13        /* one past the last; no function returns it */
+    MAGNAV_E_AREA = -13,      /* outside the area of a patch */
+    MAGNAV_E_END = -14        /* one past the last; no function returns it */
 } magnav_status;
 
 /* The name of a status and what it means, in a few words; "unknown" for a value outside the list. */

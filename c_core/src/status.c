@@ -17,6 +17,7 @@ const char *magnav_status_text(int32_t status)
     case MAGNAV_E_ACCELERATION: return "the acceleration is zero: no vertical";
     case MAGNAV_E_MAGNETIC: return "the magnetic vector is zero or vertical: no direction";
     case MAGNAV_E_PARAMETER: return "a setting is outside its range";
+    case MAGNAV_E_AREA: return "outside the area, heights or dates of the patch";
     default: return "unknown";
     }
 }

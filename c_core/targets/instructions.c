@@ -5,6 +5,7 @@
 
 #include "magnav_calibrator.h"
 #include "magnav_core.h"
+#include "magnav_patch.h"
 #include "wmm2025_data.h"
 
 #define SYSTICK ((volatile uint32_t *)0xE000E010u) /* control, reload, current */
@@ -34,6 +35,9 @@ int main(void)
     static const magnav_real breaks[2] = {2025, 2030};
     const magnav_model model = {breaks, polynomials, 2025, 2030, 12, 2, 1};
     const magnav_real mag[3] = {21, -3, 44};
+    static const magnav_real terms[3 * 29] = {20000, 1500, 43000};
+    const magnav_patch patch = {terms, {47, 13, 2000, 2027}, {(magnav_real)0.5, (magnav_real)0.25, (magnav_real)0.0005, 1},
+                                {1, 1, 1}, (magnav_real)0.01, 4};
     const magnav_real down[3] = {(magnav_real)0.1, (magnav_real)-0.2, 1};
     magnav_snapshot snapshot;
     magnav_field_values field;
@@ -92,6 +96,10 @@ int main(void)
     status |= magnav_calibrator_add(&calibrator, mag);
     to = now();
     report("magnav_calibrator_add", from, to);
+    from = now();
+    status |= magnav_patch_at(&patch, 47, 12, 500, 2027, vector);
+    to = now();
+    report("magnav_patch_at (degree 4: 29 terms)", from, to);
     printf("state of the calibrator,%lu\n", (unsigned long)sizeof calibrator);
     return status != 0;
 }

@@ -66,5 +66,6 @@ void test_vertical(void);
 void test_log(void);
 void test_image(void);
 void test_calibrator(void);
+void test_patch(void);
 
 #endif

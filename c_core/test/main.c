@@ -123,6 +123,7 @@ int main(void)
     test_log();
     test_image();
     test_calibrator();
+    test_patch();
     printf("%ld passed, %ld failed\n", passed, failed);
     return failed != 0;
 }

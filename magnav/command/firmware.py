@@ -134,7 +134,38 @@ def _write_json(path, kind, report):
     pathlib.Path(path).write_text(json.dumps(content, indent=2, allow_nan=False) + "\n", encoding="utf-8")
 
 
-STEPS = (ImageStep, SourceStep, VectorsStep, CheckStep)
+class PatchStep:
+    """The field over a mission area, for parts too small for a model."""
+
+    NAME = "patch"
+    SUMMARY = "The field over a mission area as a small C table with a guaranteed bound on its error."
+
+    @staticmethod
+    def add(parser):
+        _add_model(parser, years=False)
+        for name, what in (("lat", "degrees"), ("lon", "degrees; beyond 180 to go across it"), ("height-m", "metres")):
+            parser.add_argument(f"--{name}", nargs=2, type=float, required=True, metavar=("LOW", "HIGH"), help=what)
+        parser.add_argument("--dates", nargs=2, required=True, metavar=("FIRST", "LAST"), help="2026-03-01 2026.9")
+        parser.add_argument("--error-nT", type=float, default=1.0, metavar="NT", help="bound wanted (1)")
+        parser.add_argument("--name", default="field_patch", metavar="NAME", help="name of the constant (field_patch)")
+        parser.add_argument("--output", required=True, metavar="FILE", help="where the C file goes")
+
+    @staticmethod
+    def run(options):
+        from ..firmware.patch import c_source, make_patch
+
+        patch = make_patch(_model(options), options.lat, options.lon, options.height_m, options.dates, options.error_nT)
+        text = c_source(patch, options.name)
+        with open(options.output, "w", encoding="ascii", newline="\n") as file:
+            file.write(text)
+        north, east, down = patch.bound_nT
+        print(f"{options.output}: degree {patch.degree}, {patch.coefficients.size} coefficients; error at most "
+              f"{north:.2f} north, {east:.2f} east, {down:.2f} down nT, {patch.declination_bound_deg:.4f} deg of "
+              "declination")
+        return exits.DONE
+
+
+STEPS = (ImageStep, SourceStep, PatchStep, VectorsStep, CheckStep)
 
 
 def add_parser(commands):

@@ -103,6 +103,18 @@ def heading_of(setup, mag_uT, down, tilt_sigma_deg):
     return out[0], status
 
 
+def patch_at(patch, lat_deg, lon_deg, height_m, year):
+    """North, east, down (3,) of a `Patch`, nT, and the status."""
+    coefficients = np.ascontiguousarray(patch.coefficients, dtype=np.float64)
+    c = ffi.new("magnav_patch *", {
+        "coefficients": _pointer(coefficients, "double[]"), "middle": patch.middle.tolist(),
+        "inverse_half": (1 / patch.half).tolist(), "bound_nT": patch.bound_nT.tolist(),
+        "declination_bound_deg": patch.declination_bound_deg, "degree": patch.degree})
+    ned = ffi.new("double[3]")
+    status = lib.magnav_patch_at(c, lat_deg, lon_deg, height_m, year, ned)
+    return np.array(list(ned)), status
+
+
 def calibrator_solution(mag_uT, field_uT):
     """What the target's calibrator makes of readings (n, 3): a dict with hard_iron_uT (3,), soft_iron (3, 3),
     covariance (9, 9), noise_uT, seen and refusal (a magnav_refusal of the core)."""

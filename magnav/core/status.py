@@ -22,6 +22,7 @@ EXCEPTION_OF = {
     lib.MAGNAV_E_ACCELERATION: InputError,
     lib.MAGNAV_E_MAGNETIC: InputError,
     lib.MAGNAV_E_PARAMETER: InputError,
+    lib.MAGNAV_E_AREA: InputError,
     lib.MAGNAV_E_NULL: RuntimeError,
     lib.MAGNAV_E_MEMORY: RuntimeError,
 }

@@ -50,8 +50,8 @@ def heading_setup():
 def make_vectors(model, count=200, seed=1):
     """`count` fields and as many headings from the desk.
 
-    model: a `Model` (the field's vectors come from its image, which is what a target holds). The fields hold both
-    poles, the points nearest to them that a float holds, the ends of the validity, longitudes over the whole accepted range.
+    model: a `Model`; its image goes with the vectors. The fields hold both poles, the points nearest to them that a
+    float holds, the ends of the validity, longitudes over the whole accepted range.
     Raises InputError.
     """
     if not 20 <= count <= 100_000:
