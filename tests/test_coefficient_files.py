@@ -66,7 +66,7 @@ def test_cof_of_another_degree(tmp_path):
     assert np.array_equal(model.polynomials[..., :term_count(7)], read(tmp_path, COF).polynomials[..., :term_count(7)])
 
 
-@pytest.mark.parametrize(("order", "steps"), [(2, 1), (2, 2), (3, 2), (3, 4), (4, 3), (4, 5)])
+@pytest.mark.parametrize(("order", "steps"), [(1, 1), (1, 3), (2, 1), (2, 2), (3, 2), (3, 4), (4, 3), (4, 5)])
 def test_shc_spline_orders_against_scipy(tmp_path, order, steps):
     """B-splines in time by scipy (general reference library), sampled as the layout says, read back."""
     rng = np.random.default_rng(order * 10 + steps)
@@ -76,17 +76,18 @@ def test_shc_spline_orders_against_scipy(tmp_path, order, steps):
     spline = BSpline(knots, rng.normal(size=(len(knots) - order, term_count(3))) * 1000, order - 1)
     model = read(tmp_path, shc_text(years, spline(years), 1, 3, order, steps))
     when = rng.uniform(breaks[0], breaks[-1], 200)
-    assert np.allclose(at(model, when), spline(when), rtol=0, atol=2e-6)  # the file is printed to 1e-7 nT
+    assert np.abs(at(model, when) - spline(when)).max() < 1e-9
+    assert np.abs(at(model, years) - spline(years)).max() < 1e-9
     assert (model.valid_from_yr, model.valid_until_yr, model.degree) == (2000.0, 2020.0, 3)
 
 
 def shc_text(years, values, low, high, order, steps):
-    lines = ["# a model", f"{low} {high} {len(years)} {order} {steps}", " ".join(f"{y:.12f}" for y in years)]
+    lines = ["# a model", f"{low} {high} {len(years)} {order} {steps}", " ".join(f"{y!r}" for y in years.tolist())]
     for n in range(low, high + 1):
         for m in range(n + 1):
             for sign in ((1, -1) if m else (1,)):
                 column = values[:, term_index(n, m, sine=sign < 0)]
-                lines.append(f"{n} {sign * m} " + " ".join(f"{v:.7f}" for v in column))
+                lines.append(f"{n} {sign * m} " + " ".join(f"{v!r}" for v in column.tolist()))
     return "\n".join(lines) + "\n"
 
 
@@ -95,7 +96,32 @@ def test_shc_order_one_is_constant(tmp_path):
     one = read(tmp_path, shc_text(np.array([2010.0]), values[:1], 1, 2, 1, 1))
     assert one.polynomials.shape == (1, 1, 8) and one.valid_from_yr == -np.inf and one.valid_until_yr == np.inf
     steps = read(tmp_path, shc_text(np.array([2010.0, 2015.0, 2020.0]), values, 1, 2, 1, 1))
-    assert np.allclose(at(steps, [2012.0, 2017.0]), values[:2], atol=1e-6)
+    # both ends belong to the validity: the last year has its own values
+    assert np.array_equal(at(steps, [2012.0, 2015.0, 2017.0, 2020.0]), values[[0, 1, 1, 2]])
+    assert (steps.valid_from_yr, steps.valid_until_yr) == (2010.0, 2020.0)
+    text = shc_text(np.array([2010.0, 2015.0, 2020.0]), values, 1, 2, 1, 2)
+    with pytest.raises(CoefficientFileError, match=r"line 2: .* no polynomial of order 1"):
+        read(tmp_path, text)
+
+
+@pytest.mark.parametrize("more", [" 1900.0", " 1900.0 2030.0", " 1900.0 2030.0 1"])
+def test_shc_header_may_go_on_after_its_five_integers(tmp_path, more):
+    lines = SHC.splitlines()
+    lines[2] += more
+    assert np.array_equal(read(tmp_path, "\n".join(lines) + "\n").polynomials, read(tmp_path, SHC).polynomials)
+
+
+def test_igrf_table_up_to_the_turn_of_the_century(tmp_path):
+    """1995-00 ends in 2000; before 2000 degree 10 is all there is (Alken et al. 2021)."""
+    rows = [line.split() for line in TABLE.splitlines()[2:]]
+    until = rows[0].index("1995.0") + 1
+    out = ["g/h n m " + " ".join(rows[0][3:until]) + " 1995-00",
+           *(" ".join([*row[:until], "1.5"]) for row in rows[1:] if int(row[1]) <= 10)]
+    model = read(tmp_path, "\n".join(out) + "\n")
+    assert (model.degree, model.valid_until_yr) == (10, 2000.0)
+    assert model.polynomials[-1, 1].tolist() == [1.5] * term_count(10)
+    with pytest.raises(CoefficientFileError, match="line 1: the secular variation 1990-99 does not start"):
+        read(tmp_path, "\n".join(out).replace("1995-00", "1990-99") + "\n")
 
 
 def test_shc_of_the_crust_starts_above_degree_one_and_is_evaluated(tmp_path):
@@ -167,6 +193,12 @@ HOSTILE = [
     ("SPLINES", lambda ls: ls.__delitem__(slice(40, None)), 40, "rows are missing"),
     ("SPLINES", lambda ls: ls.__delitem__(slice(6, None)), 6, "cut off"),
     ("COF", lambda ls: ls.pop(), 92, "two closing lines"),
+    ("COF", edit(91, 0, "9" * 20), 92, "48 nines, this one 20"),
+    ("COF", edit(92, 0, "9" * 20), 93, "two closing lines"),
+    # a table cut where a degree is complete
+    ("TABLE", lambda ls: ls.__delitem__(slice(3 + 168, None)), 171, "ends at degree 12, IGRF of 2025 at 13"),
+    ("SPLINES", lambda ls: ls.pop(), 166, "rows are missing"),
+    ("SPLINES", lambda ls: ls.pop(4), 166, "rows are missing"),
     # a row missing, twice, out of order
     *((kind, lambda ls: ls.pop(20), 21, "missing, twice or out of order") for kind in ("COF", "SHC", "TABLE")),
     *((kind, lambda ls: ls.insert(20, ls[20]), 22, "missing, twice or out of order")
@@ -179,7 +211,7 @@ HOSTILE = [
     *((kind, edit(20, -1, text), 21, words) for kind in ("COF", "SHC", "TABLE", "SPLINES")
       for text, words in (("NaN", "not a number"), ("inf", "not a number"), ("1e400", "beyond"),
                           ("1_0", "not a number"), ("0x10", "not a number"), ("12.3.4", "not a number"),
-                          ("9999999", "beyond"),
+                          ("9999999", "beyond"), ("-1000001", "beyond"),
                           ("1" * 400, "beyond"), ("--5", "not a number"))),
     # degrees and orders
     ("COF", edit(20, 0, "10000"), 21, "degree 10000 is outside 1 to 800"),
@@ -189,17 +221,23 @@ HOSTILE = [
     ("COF", edit(20, 0, "-5"), 21, "degree -5 is outside"), ("COF", edit(20, 1, "9"), 21, "order 9 is outside"),
     ("SHC", edit(20, 1, "-9"), 21, "order -9 is outside"), ("TABLE", edit(20, 2, "-2"), 21, "order -2 is outside"),
     ("COF", edit(20, 0, "5.0"), 21, "not a whole number"), ("SHC", edit(20, 1, "x"), 21, "not a whole number"),
-    ("COF", edit(1, 3, "7.0"), 2, "h of order 0"),
+    ("COF", edit(1, 3, "7.0"), 2, "h of order 0"), ("COF", edit(1, 5, "7.0"), 2, "h of order 0"),
+    ("TABLE", lambda ls: ls.insert(4, "h 1 0" + ls[3][5:]), 5, "row h 1 0 where g 1 1 is due"),
+    ("SPLINES", lambda ls: ls.__setitem__(3, ls[3].replace("g1_1", "h1_0")), 4, "h1_0 where g1_1 is due"),
     # columns
     ("COF", edit(20, 0, "5 5"), 21, "7 columns"), ("SHC", edit(20, 3, "5 5"), 21, "30 columns"),
     ("TABLE", edit(20, 3, "5 5"), 21, "31 columns"), ("SPLINES", edit(20, 3, "5,5"), 21, "226 columns"),
+    ("COF", edit(20, -1, ""), 21, "5 columns"), ("SHC", edit(20, -1, ""), 21, "28 columns"),
+    ("TABLE", edit(20, -1, ""), 21, "29 columns"), ("SPLINES", edit(20, -1, ""), 21, "'' is not a number"),
+    ("SPLINES", lambda ls: ls.__setitem__(20, ls[20].rpartition(",")[0]), 21, "224 columns"),
     # headers
     ("COF", edit(0, 0, "20255.0"), 1, "not a year"), ("SHC", edit(2, 0, "0"), 3, "not a range"),
     ("SHC", edit(2, 0, "14"), 3, "not a range"), ("SHC", edit(2, 2, "26"), 4, "27 years where the header says 26"),
     ("SHC", edit(2, 3, "7"), 3, "spline order 7 is outside 1 to 4"),
     ("SHC", edit(2, 3, "3"), 3, "needs at least 2 steps"), ("SHC", edit(2, 4, "4"), 3, "do not make whole intervals"),
     ("SHC", edit(2, 4, "13"), 3, "no polynomial of order 2"), ("SHC", edit(2, 4, "0"), 3, "at least 1"),
-    ("SHC", edit(3, 5, "1900.0"), 4, "do not increase"),
+    ("SHC", edit(3, 5, "1900.0"), 4, "do not increase"), ("SHC", edit(3, 1, "1900.00001"), 4, "do not increase"),
+    ("SHC", edit(2, 1, "800"), 3, "more than 16,777,216 values"),
     ("SHC", lambda ls: ls.__delitem__(slice(3, None)), 3, "years is missing"),
     ("TABLE", edit(2, -1, "SV"), 3, "secular variation"), ("TABLE", edit(2, 5, "1900.0"), 3, "do not increase"),
     ("TABLE", lambda ls: ls.pop(2), 3, "is missing"),
@@ -208,6 +246,10 @@ HOSTILE = [
     # rubbish after the end
     ("COF", lambda ls: ls.append("1 0 1.0 0.0 1.0 0.0"), 94, "two closing lines"),
     ("SHC", lambda ls: ls.append(ls[-1]), 200, "after the last one"),
+    ("COF", lambda ls: ls.append(""), 94, "two closing lines"),
+    ("TABLE", lambda ls: ls.append("rubbish"), 199, "1 columns"),
+    ("TABLE", lambda ls: ls.append(ls[3]), 199, "row g 1 0 where g 14 0 is due"),
+    ("SPLINES", lambda ls: ls.append("rubbish"), 168, "1 columns"),
     ("COF", lambda ls: ls.insert(0, "rubbish"), 1, "no header of a known layout"),
 ]
 
@@ -229,6 +271,7 @@ def test_wrong_line_ends_and_binary(tmp_path, text):
              ("\n".join(lines[:9]) + "\r\n" + "\n".join(lines[9:]), 9, "convert the file"),
              (text[:-1], len(lines) - 1, "cut off"),
              ("\n".join(lines[:9]) + "\n\0\0\0\n" + "\n".join(lines[9:]), 10, "binary"),
+             ("\n".join(lines[:9]) + "\n1\x1c2\n" + "\n".join(lines[9:]), 10, "binary"),
              (b"# \xff\n" + text.encode(), 1, "UTF-8"),
              ("\n".join(lines[:9]) + "\n５ 5\n" + "\n".join(lines[9:]), 10, "not ASCII"), ("", None, "empty"),
              (os.urandom(5000).replace(b"\n", b"") + b"\0\n", 1, ".")]
@@ -255,14 +298,24 @@ def test_two_gigabytes_of_digits(tmp_path):
     assert caught.value.line == 65_537
 
 
+def test_millions_of_short_lines(tmp_path):
+    """Inside the limit of bytes, but each line costs far more memory than its own byte."""
+    for line in (b"\n", b"#\n"):
+        (tmp_path / "lines").write_bytes(line * 3_000_000)
+        with pytest.raises(CoefficientFileError, match="more than 1,000,000 lines") as caught:
+            read_coefficients(tmp_path / "lines")
+        assert caught.value.line == 1_000_001
+
+
 def test_what_is_no_file(tmp_path):
-    for path in (tmp_path, "/dev/zero", tmp_path / "nowhere"):
+    os.mkfifo(tmp_path / "pipe")  # that nobody writes into: opening must not wait
+    for path in (tmp_path, "/dev/zero", tmp_path / "nowhere", tmp_path / "pipe"):
         with pytest.raises(CoefficientFileError):
             read_coefficients(path)
 
 
 @settings(max_examples=300, deadline=None)
-@given(st.sampled_from([COF, SHC, TABLE]), st.data())
+@given(st.sampled_from([COF, SHC, TABLE, SPLINES]), st.data())
 def test_fuzzed_files_are_models_or_errors_with_a_line(tmp_path_factory, text, data):
     """Random bytes changed, cut, repeated: nothing but a model or a CoefficientFileError may come of it."""
     raw = bytearray(text.encode())

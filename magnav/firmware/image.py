@@ -41,7 +41,9 @@ def make_image(model, first_yr=None, last_yr=None):
         raise InputError(f"years {first_yr} to {last_yr} hold nothing of {c.name}, valid {c.valid_from_yr:g} to "
                          f"{c.valid_until_yr:g}")
     low = int(np.clip(np.searchsorted(c.breaks_yr, valid[0], side="right") - 1, 0, pieces - 1))
-    high = int(np.clip(np.searchsorted(c.breaks_yr, valid[1], side="left"), low + 1, pieces))
+    # at its end a step function has already taken its next value
+    side = "right" if order == 1 else "left"
+    high = int(np.clip(np.searchsorted(c.breaks_yr, valid[1], side=side), low + 1, pieces))
     breaks, polynomials = c.breaks_yr[low:high + 1], c.polynomials[low:high]
 
     scaled = [_scaled(polynomials[:, power]) for power in range(order)]

@@ -1,19 +1,11 @@
 """Readers of published coefficient files; the layout is found from the content, not from the file's name."""
 
+import os
+import stat
+
+from ...errors import CoefficientFileError
 from . import cof, igrf_table, image, shc, spline_table
-from .text import LARGEST_FILE, Lines
-
-
-def _image_of(path):
-    """The bytes of a file that starts as a binary image does, else None."""
-    try:
-        with open(path, "rb") as file:
-            if file.read(len(image.MAGIC)) == image.MAGIC:
-                file.seek(0)
-                return file.read(LARGEST_FILE)
-    except OSError:
-        pass  # the reader of text says what is wrong with the file
-    return None
+from .text import LARGEST_FILE, Lines, without_waiting
 
 
 def read_coefficients(path):
@@ -21,10 +13,17 @@ def read_coefficients(path):
 
     Returns `Coefficients`. Raises CoefficientFileError, with the line, where the file cannot be trusted.
     """
-    content = _image_of(path)
-    if content is not None:
-        return image.read(path, content)
-    lines = Lines(path)
+    try:
+        with open(path, "rb", opener=without_waiting) as file:
+            if not stat.S_ISREG(os.fstat(file.fileno()).st_mode):
+                raise CoefficientFileError(path, None, "not a regular file")
+            if file.read(len(image.MAGIC)) == image.MAGIC:
+                file.seek(0)
+                return image.read(path, file.read(LARGEST_FILE))
+            file.seek(0)
+            lines = Lines(path, file)
+    except OSError as error:
+        raise CoefficientFileError(path, None, f"cannot be read: {error.strerror}") from error
     number, first = next(((n, t) for n, t in lines.rows if t.strip() and not t.startswith("#")), lines.rows[-1])
     for layout in (igrf_table, spline_table, shc, cof):
         if layout.looks_like(first):

@@ -8,6 +8,7 @@ import numpy as np
 from ..coefficients import Coefficients, term_count, term_index
 
 VALID_FOR_YR = 5.0
+CLOSING = "9" * 48
 
 
 def looks_like(first):
@@ -27,8 +28,10 @@ def read(lines):
     expected = (1, 0)
     for number, row in lines.rows[1:]:
         words = row.split()
-        if _closing(words):
+        if words == [CLOSING]:
             break
+        if len(words) == 1 and set(words[0]) == {"9"}:
+            lines.fail(number, f"a closing line has {len(CLOSING)} nines, this one {len(words[0])}: it is cut off")
         if len(words) != 6:
             lines.fail(number, f"{len(words)} columns where `n m g h g' h'` are expected")
         n, m = lines.degree_order(number, words[0], words[1])
@@ -46,9 +49,9 @@ def read(lines):
     if expected[1] != 0 or not values:
         lines.fail(number, f"degree {expected[0]} is not complete: order {expected[1]} is missing")
     tail = lines.rows[number - 1:]
-    if len(tail) != 2 or not _closing(tail[1][1].split()):
-        wrong = tail[2] if len(tail) > 2 and _closing(tail[1][1].split()) else tail[min(1, len(tail) - 1)]
-        lines.fail(wrong[0], "two closing lines of nines must end the file")
+    if [text.split() for _, text in tail] != [[CLOSING]] * 2:
+        wrong = tail[2] if len(tail) > 2 and tail[1][1].split() == [CLOSING] else tail[min(1, len(tail) - 1)]
+        lines.fail(wrong[0], f"two closing lines of {len(CLOSING)} nines must end the file")
     polynomials = np.zeros((1, 2, term_count(degree)))
     for n, m, (g, h, g_rate, h_rate) in values:
         polynomials[0, :, term_index(n, m)] = g, g_rate
@@ -57,7 +60,3 @@ def read(lines):
     name, released = header.split()[1:]
     return Coefficients(name, f"COF file, released {released}", degree, epoch, epoch, epoch + VALID_FOR_YR,
                         np.array([epoch, epoch + VALID_FOR_YR]), polynomials)
-
-
-def _closing(words):
-    return len(words) == 1 and len(words[0]) >= 10 and set(words[0]) == {"9"}

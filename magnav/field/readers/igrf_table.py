@@ -1,6 +1,7 @@
 """The IGRF table: a line naming each epoch's kind, a line `g/h n m` with the years, rows, a last column of rates.
 
 IAGA Division V-MOD; linear in time between epochs, five years of the last column's secular variation after the last.
+Degree 10 before the year 2000, 13 from it on (Alken et al., Earth Planets Space 73:49, 2021).
 """
 
 import re
@@ -24,10 +25,13 @@ def read(lines):
     span = re.fullmatch(r"(\d{4})-(\d{2}|\d{4})", header[-1])
     if not span or len(header) < 5:
         lines.fail(number, "the last column must be a secular variation, named like 2025-30")
-    years = np.array([lines.number(number, word, "year") for word in header[3:-1]])
-    end = int(span[2]) if len(span[2]) == 4 else int(span[1][:2] + span[2])
-    if np.any(np.diff(years) <= 0) or int(span[1]) != years[-1] or end <= years[-1]:
-        lines.fail(number, "the years do not increase, or the secular variation does not start at the last one")
+    years = lines.years(number, header[3:-1])
+    start, end = int(span[1]), int(span[2])
+    if len(span[2]) == 2:
+        # 1995-00 ends in the next century
+        end = start + (end - start) % 100
+    if start != years[-1] or end <= start:
+        lines.fail(number, f"the secular variation {header[-1]} does not start at the last year, {years[-1]:g}")
     parsed, expected = [], ("g", 1, 0)
     for number, words in rows[1:]:
         if len(words) != len(header):
@@ -41,7 +45,10 @@ def read(lines):
         expected = ("h", n, m) if words[0] == "g" and m else ("g", n, m + 1) if m < n else ("g", n + 1, 0)
     if not parsed or expected[2] != 0 or expected[0] != "g":
         lines.fail(number, f"the table ends where {' '.join(map(str, expected))} is due: it is cut off")
-    degree = expected[1] - 1
+    degree, due = expected[1] - 1, 13 if years[-1] >= 2000 else 10
+    if degree < due:
+        # the table says nowhere where it ends
+        lines.fail(number, f"the table ends at degree {degree}, IGRF of {years[-1]:g} at {due}: it is cut off")
     polynomials = np.zeros((len(years), 2, term_count(degree)))
     breaks = np.append(years, float(end))
     for term, values in parsed:
@@ -50,4 +57,4 @@ def read(lines):
         polynomials[:-1, 1, term] = np.diff(main) / np.diff(years)
         polynomials[-1, 1, term] = values[-1]
     name = next((text.lstrip("# ").strip() for _, text in lines.rows if text.startswith("#")), "IGRF table")
-    return Coefficients(name[:60], name, degree, years[0], years[0], float(end), breaks, polynomials)
+    return Coefficients(name[:60], name, degree, float(years[0]), float(years[0]), float(end), breaks, polynomials)

@@ -2,7 +2,9 @@
 
 Comments, a line of five integers (lowest degree, highest degree, number of times, spline order, steps between break
 points), a line of decimal years, then rows `n m value ...`, m negative for h. The columns are field values. Between two
-break points (every steps-th time) the field is a polynomial of that order (degree order - 1) through the values there.
+break points (every steps-th time) the field is a polynomial of that order (degree order - 1) through the values there;
+of order 1, each value holds until the next break point. Words after the five integers are left aside: some files
+repeat the first and last year there.
 """
 
 import math
@@ -13,11 +15,13 @@ from ..coefficients import Coefficients, term_count, term_index
 
 # values that are not a polynomial of the stated order stand further from it than their own rounding
 LARGEST_MISFIT_NT = 0.05
+# a low degree left out costs no bytes in the file, but memory here
+MOST_VALUES = 2**24
 
 
 def looks_like(first):
     words = first.split()
-    return len(words) in (5, 7) and all(word.lstrip("+-").isdigit() for word in words[:5])
+    return len(words) >= 5 and all(word.lstrip("+-").isdigit() for word in words[:5])
 
 
 def read(lines):
@@ -32,15 +36,18 @@ def read(lines):
         lines.fail(number, f"spline order {order} is outside 1 to 4")
     if count < 1 or steps < 1:
         lines.fail(number, f"{count} times and {steps} steps: both must be at least 1")
+    if term_count(high) * count > MOST_VALUES:
+        lines.fail(number, f"degree {high} at {count} times: more than {MOST_VALUES:,} values are not read")
     if len(rows) < 2:
         lines.fail(number, "the line of years is missing")
     years = _years(lines, rows[1], count)
     values = _values(lines, rows[2:], rows[1][0], low, high, count)
+    first, last = float(years[0]), float(years[-1])
     if count == 1:
-        return Coefficients(name, source, high, years[0], -math.inf, math.inf, np.array([years[0], years[0] + 1]),
+        return Coefficients(name, source, high, first, -math.inf, math.inf, np.array([first, first + 1]),
                             values.T[np.newaxis].copy())
     breaks, polynomials = _pieces(lines, number, years, values, order, steps)
-    return Coefficients(name, source, high, years[0], years[0], years[-1], breaks, polynomials)
+    return Coefficients(name, source, high, first, first, last, breaks, polynomials)
 
 
 def _named(lines):
@@ -55,11 +62,7 @@ def _years(lines, row, count):
     number, words = row
     if len(words) != count:
         lines.fail(number, f"{len(words)} years where the header says {count}")
-    years = np.array([lines.number(number, word, "year") for word in words])
-    wrong = np.flatnonzero(np.diff(years) <= 0)
-    if wrong.size:
-        lines.fail(number, f"years do not increase: {words[wrong[0]]} is followed by {words[wrong[0] + 1]}")
-    return years
+    return lines.years(number, words)
 
 
 def _values(lines, rows, before, low, high, count):
@@ -86,9 +89,6 @@ def _values(lines, rows, before, low, high, count):
 
 def _pieces(lines, number, years, values, order, steps):
     """Break points and polynomials (pieces, order, terms)."""
-    if order == 1:
-        # each value holds from its time to the next
-        return years, values.T[:-1, np.newaxis].copy()
     if steps < order - 1:
         lines.fail(number, f"spline order {order} needs at least {order - 1} steps between break points, not {steps}")
     if (len(years) - 1) % steps:
@@ -96,10 +96,13 @@ def _pieces(lines, number, years, values, order, steps):
     breaks = years[::steps]
     polynomials = np.empty((len(breaks) - 1, order, len(values)))
     for i, start in enumerate(range(0, len(years) - 1, steps)):
-        here = slice(start, start + steps + 1)
+        # of order 1 the field may jump at a break point: the value there belongs to the next piece
+        here = slice(start, start + steps + (order > 1))
         length = years[start + steps] - years[start]
         powers = np.vander((years[here] - years[start]) / length, order, increasing=True)
-        if order == 2 and steps == 1:
+        if order == 1 and steps == 1:
+            fit = values[:, here].T
+        elif order == 2 and steps == 1:
             fit = np.stack([values[:, start], values[:, start + 1] - values[:, start]])
         else:
             fit = np.linalg.lstsq(powers, values[:, here].T, rcond=None)[0]
@@ -108,4 +111,8 @@ def _pieces(lines, number, years, values, order, steps):
             lines.fail(number, f"the values from {years[start]:g} are no polynomial of order {order}: "
                                f"off by {misfit:.3g} nT")
         polynomials[i] = fit / length ** np.arange(order)[:, np.newaxis]
+    if order == 1 and np.any(values[:, -1] != values[:, -2]):
+        # the last year belongs to the validity: its values need a piece of their own
+        breaks = np.append(breaks, years[-1] + 1)
+        polynomials = np.append(polynomials, values.T[np.newaxis, -1:], axis=0)
     return breaks, polynomials

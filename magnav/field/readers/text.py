@@ -2,32 +2,36 @@
 
 import os
 import re
-import stat
+
+import numpy as np
 
 from ...errors import CoefficientFileError
 
 LARGEST_FILE = 64 * 2**20
 LONGEST_LINE = 65_536
+MOST_LINES = 1_000_000  # degree 800 takes 641,600; without it, 64 MiB of line ends fill gigabytes of memory
 HIGHEST_DEGREE = 800
 LARGEST_NT = 1e6
+MOST_YEARS = 10_000  # the core takes no more pieces
+SHORTEST_STEP_YR = 1e-4  # divided by: closer years would make rates that overflow
 
 _NUMBER = re.compile(r"[+-]?(\d+\.?\d*|\.\d+)([eE][+-]?\d{1,4})?")
 _INTEGER = re.compile(r"[+-]?\d{1,9}")
+_BINARY = re.compile(rb"[\x00-\x08\x0b\x0c\x0e-\x1f\x7f]")
+
+
+def without_waiting(path, flags):
+    """An opener for `open`: a pipe is opened without waiting for its other end."""
+    return os.open(path, flags | getattr(os, "O_NONBLOCK", 0))
 
 
 class Lines:
-    """A text file as `rows`, a list of (line number, text): UTF-8, LF line ends, LARGEST_FILE bytes at most."""
+    """An open text file as `rows`, a list of (line number, text): UTF-8, LF line ends, bounded in bytes and lines."""
 
-    def __init__(self, path):
+    def __init__(self, path, file):
         self.path = path
         self.rows = []
-        try:
-            with open(path, "rb") as file:
-                if not stat.S_ISREG(os.fstat(file.fileno()).st_mode):
-                    self.fail(None, "not a regular file")
-                self._read(file)
-        except OSError as error:
-            self.fail(None, f"cannot be read ({error.strerror})")
+        self._read(file)
         if not self.rows:
             self.fail(None, "empty")
 
@@ -43,7 +47,9 @@ class Lines:
                 self.fail(number, f"longer than {LONGEST_LINE} characters: no published layout has such lines")
             if size > LARGEST_FILE:
                 self.fail(number, f"the file is larger than {LARGEST_FILE // 2**20} MiB here: no coefficient file is")
-            if b"\0" in line:
+            if number > MOST_LINES:
+                self.fail(number, f"the file has more than {MOST_LINES:,} lines: no coefficient file has")
+            if _BINARY.search(line):
                 self.fail(number, "holds binary data, not text")
             if b"\r" in line:
                 self.fail(number, "ends in CR or CR LF; accepted are lines ending in LF alone: convert the file")
@@ -69,6 +75,16 @@ class Lines:
         if not _INTEGER.fullmatch(text):
             self.fail(line, f"{what}: {text[:40]!r} is not a whole number")
         return int(text)
+
+    def years(self, line, texts):
+        """The years of a line as an array; they must increase."""
+        if len(texts) > MOST_YEARS:
+            self.fail(line, f"{len(texts)} years: at most {MOST_YEARS} are read")
+        years = np.array([self.number(line, text, "year") for text in texts])
+        wrong = np.flatnonzero(np.diff(years) < SHORTEST_STEP_YR)
+        if wrong.size:
+            self.fail(line, f"years do not increase: {texts[wrong[0]][:40]} is followed by {texts[wrong[0] + 1][:40]}")
+        return years
 
     def degree_order(self, line, n_text, m_text, lowest_m=0):
         n, m = self.integer(line, n_text, "degree n"), self.integer(line, m_text, "order m")
