@@ -9,6 +9,7 @@
 #include "magnav_calibrator.h"
 #include "magnav_core.h"
 #include "magnav_image.h"
+#include "magnav_patch.h"
 #include "wmm2025_data.h"
 
 #ifndef POINTS
@@ -245,6 +246,27 @@ static void calibrations(long points)
     end("calibrator", points);
 }
 
+static void patches(long points)
+{
+    static magnav_real terms[3 * 29];
+    const magnav_patch patch = {terms, {47, 179, 2000, 2027}, {(magnav_real)0.5, (magnav_real)0.25, (magnav_real)0.0005, 1},
+                                {1, 1, 1}, 1, 4};
+    begin();
+    for (int i = 0; i < 3 * 29; i++) {
+        terms[i] = spread(-30000, 30000) / (magnav_real)(1 + i * i);
+    }
+    for (long i = 0; i < points; i++) {
+        magnav_real ned[3] = {0, 0, 0};
+        const magnav_real lat = spread(44, 50);
+        const magnav_real lon = spread(170, 190);
+        const magnav_real height = spread(-100, 4100);
+        const magnav_real year = spread(2025, 2029);
+        see_int(magnav_patch_at(&patch, lat, lon, height, year, ned));
+        see_all(ned, 3);
+    }
+    end("patch", points);
+}
+
 static void images(long points)
 {
     uint8_t bytes[64] = {0};
@@ -268,6 +290,7 @@ int main(void)
         angles(points);
         headings(points);
         calibrations(points / 4);
+        patches(points);
         images(points / 4);
         printf("all %ld %08" PRIx32 "%08" PRIx32 "\n", points, (uint32_t)(total >> 32), (uint32_t)total);
     }
