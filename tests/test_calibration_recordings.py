@@ -50,6 +50,25 @@ def test_turning_trials_give_a_calibration_that_serves(score, shared, field, tri
     assert after <= np.hypot(raw, calibration.predicted_heading_sigma_deg)
 
 
+@pytest.mark.parametrize("trial", ["05", "30"])
+def test_calibration_makes_no_azimuth_worse_by_a_tenth(score, shared, field, trial):
+    """Calibrated on the whole file, scored on the rows in motion."""
+    rows = rows_of(score, shared, trial)
+    _, judged = score.split(rows)
+    calibration = calibrate(rows, field)
+    assert calibration.verdict == "good"
+    raw = score.azimuth_scatter(judged, judged[:, 7:10])
+    assert score.azimuth_scatter(judged, calibration.apply(judged[:, 7:10])) <= 1.10 * raw
+
+
+@pytest.mark.parametrize("trial", ["02", "05"])
+def test_field_of_the_laboratory_is_found_without_a_model(score, shared, trial):
+    """About 44.6 uT, as the notes beside the recordings give it (shared/datasets/README.md)."""
+    calibration = calibrate(rows_of(score, shared, trial), None)
+    assert calibration.verdict == "good" and calibration.scale == "relative"
+    assert calibration.total_uT == pytest.approx(44.6, rel=0.01)
+
+
 @pytest.mark.parametrize(("trial", "part"), [("10", 1.0), ("25", 1.0), ("33", 1.0), ("35", 1.0), ("02", 0.5)])
 def test_what_the_data_cannot_tell_is_refused(score, shared, field, trial, part):
     """10 and 25 hardly turn; in 33 and 35 a magnet comes and goes; half of 02 covers a fifth of the sphere."""

@@ -2,6 +2,7 @@
 
 import dataclasses
 import json
+import math
 
 import numpy as np
 
@@ -43,16 +44,32 @@ class Calibration:
     lon_deg: float | None = None
     height_m: float | None = None
 
+    @property
+    def residual_rms_uT(self):
+        """RMS distance of the readings to the fitted ellipsoid, uT: below the noise, nine parameters being fitted."""
+        return self.noise_uT * float(np.sqrt(max(self.samples - len(PARAMETERS), 0) / max(self.samples, 1)))
+
+    @property
+    def condition_number(self):
+        """How much more the soft iron stretches one direction than another: ratio of its singular values, no unit."""
+        return float(np.linalg.cond(self.soft_iron))
+
     def check_usable(self):
         """Raise CalibrationRefused, with the reasons, if the verdict is `refused`."""
         if self.verdict == "refused":
             raise CalibrationRefused("the calibration was refused: " + "; ".join(self.reasons))
 
     def apply(self, mag_uT, force=False):
-        """Calibrated field of readings (..., 3), uT. Raises CalibrationRefused for a refused one, unless forced."""
+        """Calibrated field of readings (..., 3), uT, in the same shape; a NaN stays a NaN.
+
+        Raises CalibrationRefused for a refused calibration, unless forced; InputError for another shape.
+        """
         if not force:
             self.check_usable()
-        return (np.asarray(mag_uT, dtype=np.float64) - self.hard_iron_uT) @ self.soft_iron
+        mag = np.asarray(mag_uT, dtype=np.float64)
+        if mag.shape[-1:] != (3,):
+            raise InputError(f"mag_uT has shape {mag.shape}; accepted: (..., 3)")
+        return (mag - self.hard_iron_uT) @ self.soft_iron
 
     def to_json(self):
         """The calibration as JSON text; units in the keys, schema and version first."""
@@ -67,11 +84,11 @@ class Calibration:
         """Read `to_json`'s text. Raises InputError naming the key that is missing or wrong."""
         try:
             content = json.loads(text)
-        except (json.JSONDecodeError, RecursionError) as error:
+        except (ValueError, RecursionError) as error:  # ValueError: no JSON, no text, a number of thousands of digits
             raise InputError(f"no calibration file: not JSON ({error})") from None
         if not isinstance(content, dict) or content.get("schema") != SCHEMA:
             raise InputError(f"no calibration file: key schema must be {SCHEMA!r}")
-        if content.get("schema_version") != SCHEMA_VERSION:
+        if content.get("schema_version") != SCHEMA_VERSION or type(content["schema_version"]) is not int:
             raise InputError(f"key schema_version is {content.get('schema_version')!r}; accepted: {SCHEMA_VERSION}")
         names = [field.name for field in dataclasses.fields(cls)]
         missing = [name for name in names if name not in content]
@@ -82,6 +99,8 @@ class Calibration:
             values[name] = _array(name, values[name], shape)
         for name in ("noise_uT", "coverage", "total_uT"):
             _real(name, values[name], lowest=0.0)
+        if values["coverage"] > 1:
+            raise InputError("key coverage must be a fraction from 0 to 1")
         for name in ("predicted_heading_sigma_deg", "date_yr", "lat_deg", "lon_deg", "height_m"):
             if values[name] is not None:
                 _real(name, values[name])
@@ -116,19 +135,27 @@ class Calibration:
             raise InputError(f"{path}: {error}") from None
 
 
-def _real(name, value, lowest=-np.inf):
-    if isinstance(value, bool) or not isinstance(value, (int, float)) or not np.isfinite(value) or value < lowest:
-        raise InputError(f"key {name} must be a finite number" + (f" from {lowest:g}" if lowest > -np.inf else ""))
+def _is_real(value):
+    """Is it a finite number, as JSON knows numbers? Neither true nor "1", nor an integer beyond a float."""
+    try:
+        return isinstance(value, (int, float)) and not isinstance(value, bool) and math.isfinite(value)
+    except OverflowError:
+        return False
+
+
+def _real(name, value, lowest=-math.inf):
+    if not _is_real(value) or value < lowest:
+        raise InputError(f"key {name} must be a finite number" + (f" from {lowest:g}" if lowest > -math.inf else ""))
 
 
 def _array(name, value, shape):
     try:
-        array = np.array(value, dtype=np.float64)
-    except (TypeError, ValueError):
-        raise InputError(f"key {name} must be numbers of shape {shape}") from None
-    if array.shape != shape or not np.all(np.isfinite(array)):
+        array = np.array(value, dtype=object)
+    except ValueError:
+        array = np.empty(0, dtype=object)
+    if array.shape != shape or not all(_is_real(number) for number in array.flat):
         raise InputError(f"key {name} must be finite numbers of shape {shape}")
-    return array
+    return array.astype(np.float64)
 
 
 def _check_matrices(values):

@@ -17,3 +17,19 @@ def cell_of(direction):
 def coverage(direction):
     """Fraction of the cells that hold at least one direction."""
     return len(np.unique(cell_of(direction))) / CELLS
+
+
+def directions_from_sphere(mag_uT, radius_uT=None):
+    """Directions (n, 3) of readings (n, 3) from the centre of a sphere of a known radius through them.
+
+    For readings that do not determine an ellipsoid. By default the radius is the magnitude of the readings. A patch has
+    two such centres; the part of the sphere that it covers is the same from either.
+    """
+    radius = radius_uT or float(np.median(np.linalg.norm(mag_uT, axis=1)))
+    middle = mag_uT.mean(axis=0)
+    _, sizes, axes = np.linalg.svd(mag_uT - middle, full_matrices=False)
+    inside = float(np.sum(sizes**2)) / len(mag_uT)
+    # the mean of points on a sphere lies below its surface: |mean - centre|^2 = radius^2 - scatter^2
+    centre = middle - axes[2] * np.sqrt(max(radius**2 - inside, 0.0))
+    direction = mag_uT - centre
+    return direction / np.maximum(np.linalg.norm(direction, axis=1), np.finfo(float).tiny)[:, None]

@@ -15,17 +15,25 @@ import numpy as np
 PAIRS = ((0, 0), (1, 1), (2, 2), (0, 1), (0, 2), (1, 2))
 ROUNDS = 100
 SMALLEST_STEP = 1e-10
+REFITS = 2  # with the bias of the noise found; what a third would change is far below the noise
 
 
 @dataclasses.dataclass(frozen=True)
 class Ellipsoid:
-    """hard_iron_uT (3,), soft_iron (3, 3), residual_uT (n,) the distances e, jacobian (n, 9), converged."""
+    """hard_iron_uT (3,), soft_iron (3, 3), residual_uT (n,) the distances e, jacobian (n, 9), converged; noise_uT,
+    whose bias was taken off."""
 
     hard_iron_uT: np.ndarray
     soft_iron: np.ndarray
     residual_uT: np.ndarray
     jacobian: np.ndarray
     converged: bool
+    noise_uT: float
+
+    def directions(self, mag_uT):
+        """Unit vectors (n, 3) of the calibrated field of readings (n, 3)."""
+        field = (mag_uT - self.hard_iron_uT) @ self.soft_iron
+        return field / np.maximum(np.linalg.norm(field, axis=1), np.finfo(float).tiny)[:, None]
 
 
 def symmetric(six):
@@ -49,58 +57,68 @@ def fit_sphere(mag_uT):
 
 def residual_and_jacobian(parameters, mag_uT, field_uT, noise_uT):
     """Distances e (n,) and their derivatives (n, 9)."""
+    # one row for each component: long rows are what numpy is fast on
     w = symmetric(parameters[3:])
-    reading = mag_uT - parameters[:3]
-    u = reading @ w
-    size = np.linalg.norm(u, axis=1)
-    unit = u / size[:, None]
-    across = unit @ w
-    gain = np.linalg.norm(across, axis=1)
+    reading = mag_uT.T - parameters[:3, None]
+    u = w @ reading
+    # a reading in the very centre has no direction
+    size = np.maximum(np.sqrt(np.einsum("in,in->n", u, u)), 1e-9 * field_uT)
+    unit = u / size
+    across = w @ unit
+    gain = np.sqrt(np.einsum("in,in->n", across, across))
     bias = noise_uT**2 * (np.sum(w * w) - gain**2) / (2 * field_uT)
     residual = (size - bias - field_uT) / gain
-    lever = across / gain[:, None]
-    turned = lever @ w
-    sideways = (turned - unit * np.sum(turned * unit, axis=1)[:, None]) / size[:, None]
-    d_size, d_gain, d_square = np.empty((len(mag_uT), 9)), np.empty((len(mag_uT), 9)), np.zeros(9)
-    d_size[:, :3], d_gain[:, :3] = -across, -(sideways @ w)
+    lever = across / gain
+    turned = w @ lever
+    sideways = (turned - unit * np.einsum("in,in->n", turned, unit)) / size
+    # of the distance to first order: d_size / gain, less what the gain and the bias change
+    by_gain = noise_uT**2 / field_uT - residual / gain
+    ahead = unit / gain + by_gain * sideways
+    aside = by_gain * lever
+    jacobian = np.empty((9, len(mag_uT)))
+    jacobian[:3] = -(w @ ahead)
     for k, (i, j) in enumerate(PAIRS, 3):
-        d_size[:, k] = unit[:, i] * reading[:, j]
-        d_gain[:, k] = lever[:, i] * unit[:, j] + sideways[:, i] * reading[:, j]
-        d_square[k] = w[i, j]
+        jacobian[k] = ahead[i] * reading[j] + aside[i] * unit[j]
         if i != j:
-            d_size[:, k] += unit[:, j] * reading[:, i]
-            d_gain[:, k] += lever[:, j] * unit[:, i] + sideways[:, j] * reading[:, i]
-            d_square[k] *= 2
-    d_bias = noise_uT**2 / field_uT * (d_square - gain[:, None] * d_gain)
-    return residual, (d_size - d_bias - residual[:, None] * d_gain) / gain[:, None]
+            jacobian[k] += ahead[j] * reading[i] + aside[j] * unit[i]
+        jacobian[k] -= noise_uT**2 / field_uT * w[i, j] * (1 if i == j else 2) / gain
+    return residual, jacobian.T
 
 
 def fit_ellipsoid(mag_uT, field_uT):
     """Fit readings (n, 3) to a field of magnitude `field_uT`; starts from the closest sphere."""
     centre, radius = fit_sphere(mag_uT)
-    parameters = np.concatenate([centre, np.full(3, field_uT / max(radius, 1e-9)), np.zeros(3)])
-    scale = np.array([1.0] * 3 + [1.0 / max(radius, 1e-9)] * 6)
-    noise = 0.0
-    residual, jacobian = residual_and_jacobian(parameters, mag_uT, field_uT, noise)
+    radius = max(radius, 1e-9)
+    start = np.concatenate([centre, np.full(3, field_uT / radius), np.zeros(3)])
+    fit = _descend(start, radius, mag_uT, field_uT, 0.0)
+    for _ in range(REFITS):
+        noise = float(np.sqrt(fit.residual_uT @ fit.residual_uT / max(len(mag_uT) - 9, 1)))
+        found = np.concatenate([fit.hard_iron_uT, six_of(fit.soft_iron)])
+        fit = _descend(found, radius, mag_uT, field_uT, noise)
+    return fit
+
+
+def _descend(parameters, radius, mag_uT, field_uT, noise_uT):
+    """Levenberg-Marquardt from `parameters`, the noise given."""
+    scale = np.array([1.0] * 3 + [1.0 / radius] * 6)
+    residual, jacobian = residual_and_jacobian(parameters, mag_uT, field_uT, noise_uT)
     damping, converged = 1e-3, False
     for _ in range(ROUNDS):
         scaled = jacobian * scale
         normal, right = scaled.T @ scaled, -scaled.T @ residual
-        step = np.linalg.solve(normal + damping * np.diag(np.diag(normal) + 1e-12), right)
+        try:
+            step = np.linalg.solve(normal + damping * np.diag(np.diag(normal) + 1e-12), right)
+        except np.linalg.LinAlgError:
+            damping *= 10
+            continue
         trial = parameters + scale * step
-        trial_residual, trial_jacobian = residual_and_jacobian(trial, mag_uT, field_uT, noise)
+        trial_residual, trial_jacobian = residual_and_jacobian(trial, mag_uT, field_uT, noise_uT)
         if np.all(np.isfinite(trial_residual)) and trial_residual @ trial_residual <= residual @ residual:
             parameters, residual, jacobian = trial, trial_residual, trial_jacobian
             damping = max(damping / 10, 1e-12)
-            if np.max(np.abs(step)) < SMALLEST_STEP * max(radius, 1.0):
-                converged = True
-                break
-            # the bias follows the noise as it becomes known
-            noise = np.sqrt(residual @ residual / max(len(residual) - 9, 1))
-            residual, jacobian = residual_and_jacobian(parameters, mag_uT, field_uT, noise)
-        elif np.max(np.abs(step)) < SMALLEST_STEP * max(radius, 1.0):
-            converged = True
-            break
         else:
             damping *= 10
-    return Ellipsoid(parameters[:3], symmetric(parameters[3:]), residual, jacobian, converged)
+        if np.max(np.abs(step)) < SMALLEST_STEP * max(radius, 1.0):
+            converged = True
+            break
+    return Ellipsoid(parameters[:3], symmetric(parameters[3:]), residual, jacobian, converged, noise_uT)

@@ -18,14 +18,21 @@ LARGEST_CONDITION = 1.8  # soft iron stretches one axis against another by some 
 LARGEST_OFFSET = 4.0  # of the field: beyond, the sensor's range and its scale error, not iron, are in question
 LARGEST_RESIDUAL = 0.05  # of the field: beyond, the iron or the field changed during the recording
 LARGEST_DRIFT = 0.04  # of the field: the same, seen in the mean of a tenth of the recording
+LARGEST_CHANGE = 0.08  # of the field: a change of iron leaves half of itself wrong, which is LARGEST_DRIFT again
+SURE_CHANGE = 30.0  # chi-square, 3 degrees: noise alone exceeds it once in 700,000, and some 200 stretches are tried
+LARGEST_SCALE = 2.0  # against the model's field: buildings and sensors differ by tenths, not by half
+HARDLY_TURNED = 0.05  # of the field: turning must show more than what may be left unexplained, LARGEST_RESIDUAL
+FLAT = 1e-7  # thickness over extent: a real sensor's noise and steps are ten thousand times that
+LARGEST_READING_UT = 1e6  # 1 T: a hundred times what compass sensors measure
+REST_ACCELERATION_MPS2, REST_TURN_RADPS = 0.2, 0.2  # a fiftieth of gravity; a turn of 11 degrees in a second
 FEWEST_SAMPLES = 50
 USE_TILT_DEG = 30.0  # how far from level headings are still asked for: a small craft in a turn
 DEFAULT_INCLINATION_DEG = 60.0  # where no field is given: a middle latitude
-MAGNITUDE_MARGIN = 0.05
-DIP_MARGIN_DEG = 2.0
+MAGNITUDE_MARGIN = 0.05  # a sensor's scale error by its data sheet; beyond, the place is in question
+DIP_MARGIN_DEG = 2.0  # what an accelerometer's own offset (a fiftieth of gravity) and a hand at rest make of the dip
 
-NAMES = ("offset along x", "offset along y", "offset along z", "scale along x", "scale along y", "scale along z",
-         "skew between x and y", "skew between x and z", "skew between y and z")
+KINDS = (("offset along", ["x", "y", "z"]), ("scale along", ["x", "y", "z"]), ("skew of", ["x-y", "x-z", "y-z"]))
+NAMED = 0.6  # of the largest part: what is named of the direction left undetermined
 
 
 def effective_count(residual):
@@ -71,10 +78,18 @@ def worst_heading_sigma_deg(covariance, soft_iron, field_uT, inclination_deg):
 
 
 def covariance_by_cells(fit, direction, misfit_uT):
-    """Covariance of the parameters where each cell seen counts as one observation with the error `misfit_uT`."""
+    """Covariance (9, 9) of the parameters where each cell seen counts as one observation with the error `misfit_uT`."""
     cell = cell_of(direction)
     weight = 1.0 / np.bincount(cell, minlength=CELLS)[cell]
     return inverse((fit.jacobian * weight[:, None]).T @ fit.jacobian) * misfit_uT**2
+
+
+def covariance_of(fit):
+    """Covariance (9, 9) of a fit's parameters: of the likelihood with the noise that the residuals show, widened by how
+    far they are correlated in the order of the recording."""
+    count = len(fit.residual_uT)
+    variance = float(fit.residual_uT @ fit.residual_uT) / (count - 9)
+    return inverse(fit.jacobian.T @ fit.jacobian) * variance * count / effective_count(fit.residual_uT)
 
 
 def inverse(information):
@@ -89,12 +104,23 @@ def weakest(covariance, field_uT):
     """Error in uT of the direction least determined, and in plain words what it is and which motion would help."""
     scale = np.array([1.0] * 3 + [field_uT] * 6)
     values, vectors = np.linalg.eigh(covariance * np.outer(scale, scale))
-    parts = np.abs(vectors[:, -1])
-    named = [NAMES[k] for k in np.argsort(-parts) if parts[k] > 0.4]
-    axes = sorted({axis for name in named for axis in "xyz" if f" {axis}" in name})
-    error_uT = float(np.sqrt(values[-1]))
-    return error_uT, (f"{' with the '.join(named)} is not determined (error about {error_uT:.0f} uT): turn the sensor "
-                      f"so that the field points along and against {' and '.join(axes)}")
+    large = np.abs(vectors[:, -1]) > NAMED * np.abs(vectors[:, -1]).max()
+    parts, motions, count = [], [], int(large.sum())
+    for kind, ((name, labels), chosen) in enumerate(zip(KINDS, large.reshape(3, 3), strict=True)):
+        labels = [label for label, is_large in zip(labels, chosen, strict=True) if is_large]
+        if labels:
+            parts.append(f"{name} {listed(labels)}")
+            motions += [f"midway between {label[0]} and {label[2]}" if kind == 2 else label for label in labels]
+    axes = sorted({motion for motion in motions if len(motion) == 1})
+    skews = [motion for motion in motions if len(motion) > 1]
+    error_uT, verb = float(np.sqrt(values[-1])), "is" if count == 1 else "are"
+    return error_uT, (f"{listed(parts)} {verb} not determined (error about {error_uT:.0f} uT): turn the "
+                      f"sensor so that the field points along and against {listed(axes + skews)}")
+
+
+def listed(words):
+    """The words as in a sentence: a; a and b; a, b and c."""
+    return " and ".join([", ".join(words[:-1]), words[-1]] if len(words) > 1 else words)
 
 
 def drift_uT(residual):
