@@ -28,6 +28,8 @@ target() {
     local began=$SECONDS
     timeout "$limit" "$@" "$out/$name$real" </dev/null >"$out/$name$real.txt" 2>"$out/log" ||
         { echo "$label: does not run"; tail -5 "$out/log"; exit 1; }
+    # a run that prints nothing must not pass for one that agrees
+    grep -q "^all $points " "$out/$name$real.txt" || { echo "$label: no hash of $points points"; exit 1; }
     echo "$(grep '^all' "$out/$name$real.txt" | tail -1)  $label  $((SECONDS - began)) s"
 }
 
