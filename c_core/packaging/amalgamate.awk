@@ -295,14 +295,6 @@ BEGIN {
     print "#pragma STDC FP_CONTRACT OFF"
     print "#elif defined(__GNUC__)"
     print "#pragma GCC optimize (\"fp-contract=off\")"
-    print "#ifdef __cplusplus"
-    print "/* = {0} is C's way to zero a structure */"
-    print "#pragma GCC diagnostic ignored \"-Wmissing-field-initializers\""
-    print "#endif"
-    print "#endif"
-    print "#if defined(__clang__) && defined(__cplusplus)"
-    print "#pragma clang diagnostic ignored \"-Wmissing-field-initializers\""
-    print "#pragma clang diagnostic ignored \"-Wmissing-braces\""
     print "#endif"
     for (f = 1; f <= total; f++) {
         source(list[f])

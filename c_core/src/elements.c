@@ -19,7 +19,7 @@ magnav_status magnav_elements(const magnav_real ned_nT[3], const magnav_real ned
                               magnav_real lon_deg, magnav_field_values *field)
 {
     const magnav_real zero = MAGNAV_C(0.0);
-    magnav_field_values v = {0};
+    magnav_field_values v;
     magnav_real h2;
     magnav_real f2;
 
@@ -36,6 +36,7 @@ magnav_status magnav_elements(const magnav_real ned_nT[3], const magnav_real ned
     if (real_abs(lon_deg) > MAGNAV_C(360.0)) {
         return MAGNAV_E_LONGITUDE;
     }
+    (void)memset(&v, 0, sizeof v);
     v.north_nT = ned_nT[0];
     v.east_nT = ned_nT[1];
     v.down_nT = ned_nT[2];

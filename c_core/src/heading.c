@@ -59,7 +59,7 @@ magnav_status magnav_heading_of(const magnav_heading_setup *setup, const magnav_
                                 const magnav_real down[3], magnav_real tilt_sigma_deg, magnav_heading *heading)
 {
     const magnav_real zero = MAGNAV_C(0.0);
-    magnav_heading out = {0};
+    magnav_heading out;
     magnav_real d[3];
     magnav_real reading[3];
     magnav_real field[3];
@@ -99,6 +99,7 @@ magnav_status magnav_heading_of(const magnav_heading_setup *setup, const magnav_
     for (int32_t i = 0; i < 3; i++) {
         field[i] = dot(&setup->calibration.soft_iron[3 * i], reading);
     }
+    (void)memset(&out, 0, sizeof out);
     out.measured_total_uT = real_sqrt(dot(field, field));
     if (!isfinite(out.measured_total_uT)) {
         return MAGNAV_E_NOT_FINITE;
@@ -197,12 +198,13 @@ magnav_status magnav_heading_log(const magnav_heading_setup *setup, size_t count
                                  const magnav_real *gyr_radps, magnav_heading *headings, int32_t *status)
 {
     static const magnav_real LEVEL[3] = {MAGNAV_C(0.0), MAGNAV_C(0.0), MAGNAV_C(1.0)};
-    magnav_vertical vertical = {0};
+    magnav_vertical vertical;
     magnav_real t_before = MAGNAV_C(0.0);
 
     if (setup == NULL || t_s == NULL || mag_uT == NULL || headings == NULL || status == NULL) {
         return MAGNAV_E_NULL;
     }
+    (void)memset(&vertical, 0, sizeof vertical);
     for (size_t i = 0; i < count; i++) {
         magnav_status row;
         if (acc_mps2 == NULL) {

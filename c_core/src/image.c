@@ -104,7 +104,7 @@ static int32_t header_sound(const uint8_t *bytes, size_t size)
 
 magnav_status magnav_image_open(const uint8_t *bytes, size_t size, magnav_image *image)
 {
-    magnav_image found = {0};
+    magnav_image found;
 
     if (bytes == NULL || image == NULL) {
         return MAGNAV_E_NULL;
@@ -113,6 +113,7 @@ magnav_status magnav_image_open(const uint8_t *bytes, size_t size, magnav_image 
         magnav_crc32(bytes, size - CRC_BYTES) != read_u32(bytes + size - CRC_BYTES)) {
         return MAGNAV_E_MODEL;
     }
+    (void)memset(&found, 0, sizeof found);
     found.bytes = bytes;
     found.degree = (int32_t)read_u16(bytes + 6);
     found.order = (int32_t)read_u16(bytes + 8);

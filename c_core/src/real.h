@@ -3,6 +3,7 @@
 #define MAGNAV_REAL_H
 
 #include <math.h>
+#include <string.h>
 
 #include "magnav_core.h"
 
