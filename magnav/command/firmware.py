@@ -76,7 +76,7 @@ class VectorsStep:
             with open(options.c_header, "w", encoding="ascii", newline="\n") as file:
                 file.write(c_header(vectors))
         counts = ", ".join(f"{len(rows)} {group}" for group, rows in vectors.rows.items())
-        print(f"{options.output}: {counts} vectors of {vectors.model}, seed {options.seed}")
+        print(f"{options.output}: {counts} vectors of {vectors.model.name}, seed {options.seed}")
         return exits.DONE
 
 
@@ -103,24 +103,44 @@ class CheckStep:
         from ..firmware.vectors import read_csv
 
         tolerance = conformance.tolerance_of(options.kind, options.tolerance_nT, options.tolerance_deg)
-        report = conformance.check_results(read_csv(options.vectors), *conformance.read_results(options.results),
+        report = conformance.check_results(read_csv(options.vectors), conformance.read_results(options.results),
                                            tolerance)
-        for finding in report.findings:
-            print(f"  {'pass' if finding.passed else 'FAIL'}  {finding.group:8} {finding.output:24} "
-                  f"{finding.compared:6d} compared, worst {finding.worst:9.3g} of {finding.tolerance:g}"
-                  + (f", {finding.missing} missing" if finding.missing else ""))
-            if not finding.passed:
-                print(f"        {conformance.worst_text(finding)}")
-        for name in report.not_checked:
-            print(f"  not checked, no such column: {name}")
-        for fault in report.faults:
-            print(f"  FAIL  {fault}")
-        print("conforms" if report.passed else "DOES NOT CONFORM", f"(class {options.kind})")
+        _print_report(report, options.kind)
         if options.json:
             _write_json(options.json, options.kind, report)
         if options.junit:
             pathlib.Path(options.junit).write_text(conformance.as_junit(report), encoding="utf-8")
         return exits.DONE if report.passed else exits.FAILED
+
+
+FAULTS_SHOWN = 20
+
+
+def _print_report(report, kind):
+    from ..firmware.conformance import worst_text
+
+    for group, said in report.groups().items():
+        print(f"{said}: {group}")
+        for finding in report.findings:
+            if finding.group == group:
+                print(f"  {'pass' if finding.passed else 'FAIL'}  {finding.output:24} "
+                      f"{finding.compared:6d} compared, worst {finding.worst:9.3g} of {finding.tolerance:g}"
+                      + (f", {finding.missing} missing" if finding.missing else "")
+                      + (f", {finding.left_out} left out: H too weak" if finding.left_out else ""))
+                if not finding.passed:
+                    print(f"        {worst_text(finding)}")
+        for name in (name for where, name in report.not_checked if where == group):
+            print(f"  not checked, no such column: {name}")
+    if report.ignored:
+        print(f"unknown columns, left out: {', '.join(map(repr, report.ignored[:FAULTS_SHOWN]))}")
+    for fault in report.faults[:FAULTS_SHOWN]:
+        print(f"FAIL: {fault}")
+    if len(report.faults) > FAULTS_SHOWN:
+        print(f"FAIL: {len(report.faults) - FAULTS_SHOWN} more faults; --json lists all")
+    verdict = "conforms" if report.passed else "DOES NOT CONFORM"
+    if report.passed and not report.complete:
+        verdict += f" in what was checked; {len(report.not_checked)} outputs were not"
+    print(f"{verdict} (class {kind})")
 
 
 def _write_json(path, kind, report):
@@ -129,8 +149,9 @@ def _write_json(path, kind, report):
     from .say import plain
 
     findings = [plain(vars(finding)) | {"passed": finding.passed} for finding in report.findings]
-    content = {"passed": report.passed, "class": kind, "findings": findings, "not_checked": report.not_checked,
-               "faults": report.faults}
+    content = {"passed": report.passed, "complete": report.complete, "class": kind, "groups": report.groups(),
+               "findings": findings, "faults": report.faults, "ignored_columns": report.ignored,
+               "not_checked": [{"group": group, "output": name} for group, name in report.not_checked]}
     pathlib.Path(path).write_text(json.dumps(content, indent=2, allow_nan=False) + "\n", encoding="utf-8")
 
 
